@@ -2,13 +2,14 @@
 //!
 //! The rooms, each using only those above it:
 //! - [`bounds`]: the table of ranges, by which everything from outside is checked; [`clock`]: the time, handed in.
-//! - [`optics`]: light in one drop and in rain: refractive index, rays, extinction.
+//! - `optics`: light in one drop and in rain: refractive index, rays, extinction.
 //! - [`sky`]: directions for an observer: Sun, refraction, antisolar point, bow circle, horizon, skyline, searches in time.
 //! - [`weather`]: feeds (fetch, cache, formats) and fields (what they say at a place and time).
-//! - [`outlook`]: sky and weather into chance, prominence, timeline and windows.
-//! - [`config`]: the one reader of configuration, the built-in demo included.
-//! - [`service`]: HTTP: routes, problems, page.
+//! - `outlook`: sky and weather into chance, prominence, timeline and windows.
+//! - `config`: the one reader of configuration, the built-in demo included.
+//! - `service`: HTTP: routes, problems, page.
 
 pub mod bounds;
 pub mod clock;
+pub mod sky;
 pub mod weather;

@@ -1,0 +1,250 @@
+//! The circle of a bow round the antisolar point, and how much of it stands over the horizon.
+
+use std::f64::consts::{PI, TAU};
+
+use super::direction::Direction;
+use super::horizon::{Horizon, Skyline};
+
+/// Points by which a circle is sampled before crossings with a skyline are narrowed: 1 degree each.
+const SAMPLES: usize = 360;
+
+/// Same-signed neighbours nearer to the skyline than this may hide two crossings between them, degrees: more than a
+/// circle can bulge over a straight skyline within one sample.
+const BULGE_DEG: f64 = 0.02;
+
+/// A circle on the sky. A point on it is named by its angle from the top, in radians, growing to the right as seen
+/// facing the centre.
+#[derive(Debug, Clone, Copy, PartialEq)]
+pub struct Circle {
+    centre: Direction,
+    top: Direction,
+    right: Direction,
+    cos_radius: f64,
+    sin_radius: f64,
+}
+
+/// What of a circle stands over a horizon.
+#[derive(Debug, Clone, PartialEq)]
+pub struct Arc {
+    /// The visible pieces as (from, to) angles, to > from; one of (-pi, pi) is the full circle.
+    pub runs: Vec<(f64, f64)>,
+    /// Share of the whole circle that is visible, 0..1.
+    pub fraction: f64,
+    /// Highest visible point.
+    pub crown: Option<Direction>,
+    /// Where the bow meets the horizon left and right of the hidden piece that holds its lowest point; none when nothing
+    /// is visible or the lowest point is visible itself.
+    pub feet: Option<(Direction, Direction)>,
+}
+
+impl Circle {
+    /// The circle of a radius in degrees round a centre.
+    pub fn new(centre: Direction, radius_deg: f64) -> Self {
+        let zenith = Direction::ZENITH;
+        let lift = -centre.up;
+        // With the centre at zenith or nadir no point is higher than another; the top then lies toward north.
+        let top = Direction::blend(&[(zenith, 1.0), (centre, lift)])
+            .filter(|_| centre.up.abs() < 1.0 - 1e-12)
+            .unwrap_or(Direction { east: 0.0, north: 1.0, up: 0.0 });
+        let (sin_radius, cos_radius) = radius_deg.to_radians().sin_cos();
+        Self { centre, top, right: centre.cross(&top), cos_radius, sin_radius }
+    }
+
+    /// The point at an angle from the top.
+    pub fn point(&self, angle: f64) -> Direction {
+        let (sin, cos) = angle.sin_cos();
+        let (c, t, r) = (self.cos_radius, self.sin_radius * cos, self.sin_radius * sin);
+        Direction {
+            east: c * self.centre.east + t * self.top.east + r * self.right.east,
+            north: c * self.centre.north + t * self.top.north + r * self.right.north,
+            up: c * self.centre.up + t * self.top.up + r * self.right.up,
+        }
+    }
+
+    /// What of the circle stands over the horizon.
+    pub fn over(&self, horizon: &Horizon) -> Arc {
+        let runs = match horizon {
+            Horizon::Level(limit_deg) => self.over_level(*limit_deg),
+            Horizon::Skyline(skyline) => self.over_skyline(skyline),
+        };
+        self.arc(runs)
+    }
+
+    /// By how many degrees the circle reaches over the horizon at its best point; negative where all of it is hidden.
+    pub fn reach_deg(&self, horizon: &Horizon) -> f64 {
+        match horizon {
+            Horizon::Level(limit_deg) => self.point(0.0).elevation_deg() - limit_deg,
+            Horizon::Skyline(skyline) => {
+                let best = self
+                    .sample_angles(skyline)
+                    .into_iter()
+                    .map(|angle| (angle, self.clearance_deg(skyline, angle)))
+                    .max_by(|a, b| a.1.total_cmp(&b.1))
+                    .map_or(0.0, |best| best.0);
+                let width = TAU / SAMPLES as f64;
+                self.clearance_deg(skyline, self.turning_point(skyline, best - width, best + width, 1.0))
+            }
+        }
+    }
+
+    /// sin(elevation) = sin a cos r + cos a sin r cos(angle): the half width over a level limit is a closed form.
+    fn over_level(&self, limit_deg: f64) -> Vec<(f64, f64)> {
+        let across = self.top.up * self.sin_radius;
+        let above = self.centre.up * self.cos_radius - limit_deg.to_radians().sin();
+        if above >= across.abs() {
+            return vec![(-PI, PI)];
+        }
+        if above <= -across.abs() {
+            return Vec::new();
+        }
+        let half = (-above / across).acos();
+        vec![(-half, half)]
+    }
+
+    fn clearance_deg(&self, skyline: &Skyline, angle: f64) -> f64 {
+        let point = self.point(angle);
+        point.elevation_deg() - skyline.elevation_deg(point.azimuth_deg())
+    }
+
+    /// Even samples and the places where the circle passes over a corner of the skyline: between two of them the skyline
+    /// is one straight line.
+    fn sample_angles(&self, skyline: &Skyline) -> Vec<f64> {
+        let mut angles: Vec<f64> = (0..SAMPLES).map(|index| -PI + TAU * index as f64 / SAMPLES as f64).collect();
+        for &(azimuth_deg, _) in skyline.points() {
+            angles.extend(self.angles_at_azimuth(azimuth_deg).into_iter().flatten());
+        }
+        angles.sort_by(f64::total_cmp);
+        angles
+    }
+
+    /// Where the circle meets the vertical half-plane of an azimuth: point . m = 0 for its horizontal normal m.
+    fn angles_at_azimuth(&self, azimuth_deg: f64) -> [Option<f64>; 2] {
+        let toward = Direction::from_angles(azimuth_deg, 0.0);
+        let normal = Direction { east: toward.north, north: -toward.east, up: 0.0 };
+        let constant = self.cos_radius * self.centre.dot(&normal);
+        let (cosine, sine) = (self.sin_radius * self.top.dot(&normal), self.sin_radius * self.right.dot(&normal));
+        let amplitude = cosine.hypot(sine);
+        if amplitude <= constant.abs() {
+            return [None, None];
+        }
+        let (middle, half) = (sine.atan2(cosine), (-constant / amplitude).acos());
+        [middle + half, middle - half].map(|angle| {
+            let angle = (angle + PI).rem_euclid(TAU) - PI;
+            (self.point(angle).dot(&toward) > 0.0).then_some(angle)
+        })
+    }
+
+    fn over_skyline(&self, skyline: &Skyline) -> Vec<(f64, f64)> {
+        let angles = self.sample_angles(skyline);
+        let horizon = Horizon::Skyline(skyline.clone());
+        let (lowest_deg, highest_deg) = horizon.extent_deg();
+        let (surely_hidden, surely_visible) = (lowest_deg.to_radians().sin(), highest_deg.to_radians().sin());
+        let margin = BULGE_DEG.to_radians();
+        let clearance = |angle: f64| {
+            let up = self.point(angle).up;
+            if up > surely_visible + margin {
+                1.0
+            } else if up < surely_hidden - margin {
+                -1.0
+            } else {
+                self.clearance_deg(skyline, angle)
+            }
+        };
+        let mut edges = Vec::new();
+        let mut before = (angles[0], clearance(angles[0]));
+        let first = before;
+        let closing = std::iter::once(angles[0] + TAU);
+        for angle in angles.iter().skip(1).copied().chain(closing) {
+            let after = (angle, if angle > PI { first.1 } else { clearance(angle) });
+            self.edges_between(skyline, before, after, &mut edges);
+            before = after;
+        }
+        pieces(&edges, first.1 >= 0.0)
+    }
+
+    fn edges_between(&self, skyline: &Skyline, a: (f64, f64), b: (f64, f64), edges: &mut Vec<f64>) {
+        if (a.1 >= 0.0) != (b.1 >= 0.0) {
+            edges.push(self.edge(skyline, a.0, b.0, a.1 >= 0.0));
+        } else if a.1.abs().min(b.1.abs()) < BULGE_DEG {
+            let sign = if a.1 >= 0.0 { -1.0 } else { 1.0 };
+            let turn = self.turning_point(skyline, a.0, b.0, sign);
+            if (self.clearance_deg(skyline, turn) >= 0.0) != (a.1 >= 0.0) {
+                edges.push(self.edge(skyline, a.0, turn, a.1 >= 0.0));
+                edges.push(self.edge(skyline, turn, b.0, a.1 < 0.0));
+            }
+        }
+    }
+
+    /// Narrows a crossing by halving to 1e-9 of a turn.
+    fn edge(&self, skyline: &Skyline, mut low: f64, mut high: f64, visible_at_low: bool) -> f64 {
+        while high - low > 1e-9 {
+            let middle = 0.5 * (low + high);
+            if (self.clearance_deg(skyline, middle) >= 0.0) == visible_at_low {
+                low = middle;
+            } else {
+                high = middle;
+            }
+        }
+        0.5 * (low + high)
+    }
+
+    /// Where `sign` times the clearance is greatest between two angles, by thirds.
+    fn turning_point(&self, skyline: &Skyline, mut low: f64, mut high: f64, sign: f64) -> f64 {
+        while high - low > 1e-6 {
+            let third = (high - low) / 3.0;
+            let (left, right) = (low + third, high - third);
+            if sign * self.clearance_deg(skyline, left) < sign * self.clearance_deg(skyline, right) {
+                low = left;
+            } else {
+                high = right;
+            }
+        }
+        0.5 * (low + high)
+    }
+
+    fn arc(&self, runs: Vec<(f64, f64)>) -> Arc {
+        let fraction = runs.iter().map(|(from, to)| to - from).sum::<f64>() / TAU;
+        let crown = runs
+            .iter()
+            .flat_map(|&(from, to)| [highest_angle(from, to), from, to])
+            .max_by(|a, b| a.cos().total_cmp(&b.cos()))
+            .map(|angle| self.point(angle));
+        let lowest_visible = runs.iter().any(|&(from, to)| from <= -PI || to >= PI);
+        let feet = (!lowest_visible && !runs.is_empty()).then(|| {
+            let left = runs.iter().map(|run| run.0).fold(f64::INFINITY, f64::min);
+            let right = runs.iter().map(|run| run.1).fold(f64::NEG_INFINITY, f64::max);
+            (self.point(left), self.point(right))
+        });
+        Arc { runs, fraction: fraction.min(1.0), crown, feet }
+    }
+}
+
+/// The angle nearest to the top within a run.
+fn highest_angle(from: f64, to: f64) -> f64 {
+    if from <= 0.0 && to >= 0.0 || to >= TAU { 0.0 } else { from }
+}
+
+/// The visible pieces between edges met while going once round from -pi; a piece that runs through the lowest point is
+/// kept as one, ending beyond pi.
+fn pieces(edges: &[f64], visible_at_start: bool) -> Vec<(f64, f64)> {
+    if edges.is_empty() {
+        return if visible_at_start { vec![(-PI, PI)] } else { Vec::new() };
+    }
+    let begin = usize::from(visible_at_start);
+    let count = edges.len();
+    (begin..count + begin)
+        .step_by(2)
+        .map(|index| {
+            let from = edges[index % count];
+            let to = edges[(index + 1) % count];
+            (from, if to < from { to + TAU } else { to })
+        })
+        .collect()
+}
+
+impl Arc {
+    /// Number of visible pieces.
+    pub fn pieces(&self) -> usize {
+        self.runs.len()
+    }
+}
