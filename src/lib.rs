@@ -11,4 +11,5 @@
 
 pub mod bounds;
 pub mod clock;
+pub mod optics;
 pub mod weather;
