@@ -2,7 +2,7 @@
 //!
 //! The rooms, each using only those above it:
 //! - [`bounds`]: the table of ranges, by which everything from outside is checked; [`clock`]: the time, handed in.
-//! - `optics`: light in one drop and in rain: refractive index, rays, extinction.
+//! - [`optics`]: light in one drop and in rain: refractive index, rays, extinction.
 //! - [`sky`]: directions for an observer: Sun, refraction, antisolar point, bow circle, horizon, skyline, searches in time.
 //! - [`weather`]: feeds (fetch, cache, formats) and fields (what they say at a place and time).
 //! - `outlook`: sky and weather into chance, prominence, timeline and windows.
@@ -11,5 +11,6 @@
 
 pub mod bounds;
 pub mod clock;
+pub mod optics;
 pub mod sky;
 pub mod weather;

@@ -142,8 +142,7 @@ impl Times {
                 }
                 let next = *times.get(after)?;
                 let gap_s = next - times[before];
-                (gap_s <= MAX_GAP_S)
-                    .then(|| (before, after, ((time_s - times[before]) as f64 / gap_s as f64) as f32))
+                (gap_s <= MAX_GAP_S).then(|| (before, after, ((time_s - times[before]) as f64 / gap_s as f64) as f32))
             }
             Self::Periods(periods) => {
                 let after = periods.partition_point(|period| period.start <= time_s);
@@ -260,7 +259,12 @@ impl Field {
 
 impl Series {
     /// Weighted mean over cells and times; NaN where a contributing value is missing.
-    pub fn sample(&self, cells: usize, (before, after, weight): (usize, usize, f32), corners: &[(usize, f32); 4]) -> f32 {
+    pub fn sample(
+        &self,
+        cells: usize,
+        (before, after, weight): (usize, usize, f32),
+        corners: &[(usize, f32); 4],
+    ) -> f32 {
         let slice = |index: usize| {
             let values = &self.values[index * cells..(index + 1) * cells];
             corners.iter().filter(|corner| corner.1 > 0.0).map(|&(cell, share)| values[cell] * share).sum::<f32>()

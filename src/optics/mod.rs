@@ -1,0 +1,12 @@
+//! Light in one drop and in rain: what a bow looks like and how well it stands out.
+//!
+//! Everything here is a pure function of numbers: no clock, no I/O, no state. Wavelengths are in micrometres in
+//! vacuum, angles in degrees, rain in mm/h. The parts, each using only those above it:
+//! - [`air`] and [`water`]: refractive index;
+//! - [`ray`]: the stationary (Descartes) ray of a bow of any order;
+//! - [`drops`]: sizes of drops in rain, and what they take from a beam.
+
+pub mod air;
+pub mod drops;
+pub mod ray;
+pub mod water;
