@@ -5,12 +5,13 @@
 //! - [`optics`]: light in one drop and in rain: refractive index, rays, extinction.
 //! - [`sky`]: directions for an observer: Sun, refraction, antisolar point, bow circle, horizon, skyline, searches in time.
 //! - [`weather`]: feeds (fetch, cache, formats) and fields (what they say at a place and time).
-//! - `outlook`: sky and weather into chance, prominence, timeline and windows.
+//! - [`outlook`]: sky and weather into chance, prominence, timeline and windows.
 //! - `config`: the one reader of configuration, the built-in demo included.
 //! - `service`: HTTP: routes, problems, page.
 
 pub mod bounds;
 pub mod clock;
 pub mod optics;
+pub mod outlook;
 pub mod sky;
 pub mod weather;

@@ -5,6 +5,7 @@
 pub mod circle;
 pub mod direction;
 pub mod horizon;
+pub mod magnetic;
 pub mod observer;
 pub mod refraction;
 pub mod search;
