@@ -9,5 +9,7 @@
     reason = "tests fail by panicking and tell how close they came"
 )]
 
+mod properties_sky;
 mod reference_optics;
+mod reference_sky;
 mod table;

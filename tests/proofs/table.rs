@@ -19,6 +19,28 @@ impl Row {
         self.inputs[key].as_f64().unwrap_or_else(|| panic!("{key} is no number in {:?}", self.inputs))
     }
 
+    /// A text of the inputs.
+    pub fn text(&self, key: &str) -> &str {
+        self.inputs[key].as_str().unwrap_or_else(|| panic!("{key} is no text in {:?}", self.inputs))
+    }
+
+    /// A list of numbers within an object of the inputs.
+    pub fn list(&self, key: &str, member: &str) -> Vec<f64> {
+        let list = self.inputs[key][member].as_array();
+        let list = list.unwrap_or_else(|| panic!("{key}.{member} is no list in {:?}", self.inputs));
+        list.iter().map(|value| value.as_f64().unwrap_or_else(|| panic!("{value} is no number"))).collect()
+    }
+
+    /// A text that the row expects; none where it expects none.
+    pub fn expected_text(&self, key: &str) -> Option<&str> {
+        self.expected[key].as_str()
+    }
+
+    /// The tolerance of an expected time, seconds.
+    pub fn tolerance_s(&self, key: &str) -> f64 {
+        self.tolerance[key]["abs_s"].as_f64().unwrap_or_else(|| panic!("{key} has no tolerance in seconds"))
+    }
+
     /// A number that the row expects.
     pub fn expected_number(&self, key: &str) -> f64 {
         self.expected[key].as_f64().unwrap_or_else(|| panic!("{key} is no number in {:?}", self.expected))
