@@ -6,11 +6,13 @@
 //! - [`sky`]: directions for an observer: Sun, refraction, antisolar point, bow circle, horizon, skyline, searches in time.
 //! - [`weather`]: feeds (fetch, cache, formats) and fields (what they say at a place and time).
 //! - [`outlook`]: sky and weather into chance, prominence, timeline and windows.
-//! - `config`: the one reader of configuration, the built-in demo included.
+//! - [`demo`]: an invented coast under invented showers; [`config`]: the one reader of configuration.
 //! - `service`: HTTP: routes, problems, page.
 
 pub mod bounds;
 pub mod clock;
+pub mod config;
+pub mod demo;
 pub mod optics;
 pub mod outlook;
 pub mod sky;

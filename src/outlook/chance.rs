@@ -141,7 +141,8 @@ impl<'a> Weather<'a> {
             visual_range_km: km(Quantity::Visibility).unwrap_or(FARTHEST_KM),
             cloud_base_km,
             rain_top_km: freezing_km.map_or(cloud_base_km, |freezing| cloud_base_km.min(freezing.max(0.0))),
-            snow: temperature_c.map_or(freezing_km.is_some_and(|km| km <= 0.0), |temperature| temperature < SNOW_BELOW_C),
+            snow: temperature_c
+                .map_or(freezing_km.is_some_and(|km| km <= 0.0), |temperature| temperature < SNOW_BELOW_C),
         }
     }
 
@@ -200,8 +201,7 @@ impl<'a> Weather<'a> {
         for (series, layer_km) in self.clouds.iter().flatten() {
             let layer_km = layer_km.unwrap_or(shade.cloud_base_km);
             let Some(away_km) = shade.crossing_km(layer_km - height_km) else { continue };
-            let there =
-                instant.value(series, east_km + away_km * shade.sun_east, north_km + away_km * shade.sun_north);
+            let there = instant.value(series, east_km + away_km * shade.sun_east, north_km + away_km * shade.sun_north);
             let cover = if there.is_nan() { instant.value(series, east_km, north_km) } else { there };
             lit *= if cover.is_nan() { 1.0 - UNKNOWN_COVER } else { 1.0 - f64::from(cover) };
         }
@@ -228,9 +228,8 @@ impl Shade {
     /// the root of d tan h + d^2/(2R') = climb. None for a layer below the point.
     fn crossing_km(&self, climb_km: f64) -> Option<f64> {
         const RADIUS_KM: f64 = EARTH_RADIUS_M / 1000.0 / (1.0 - REFRACTION_COEFFICIENT);
-        (climb_km > 0.0).then(|| {
-            RADIUS_KM * ((self.tan_sun * self.tan_sun + 2.0 * climb_km / RADIUS_KM).sqrt() - self.tan_sun)
-        })
+        (climb_km > 0.0)
+            .then(|| RADIUS_KM * ((self.tan_sun * self.tan_sun + 2.0 * climb_km / RADIUS_KM).sqrt() - self.tan_sun))
     }
 }
 

@@ -8,7 +8,9 @@ use crate::sky::sun::Sun;
 use crate::weather::field::{Field, Space};
 use crate::weather::quantity::Quantity;
 
-use super::answer::{Assumption, Bearing, CAUTIONS, Limit, Outlook, SkyEvent, SkyEventKind, Step, THUNDER_CAUTION, round};
+use super::answer::{
+    Assumption, Bearing, CAUTIONS, Limit, Outlook, SkyEvent, SkyEventKind, Step, THUNDER_CAUTION, round,
+};
 use super::chance::{CLOUD_BASE_KM, SNOW_BELOW_C, UNKNOWN_COVER, Weather};
 use super::copies::{COUNT, WIDER_WITHOUT_WIND};
 use super::sight::{FARTHEST_KM, Sight, margin_deg};
@@ -57,9 +59,7 @@ fn step(ask: &Ask, weather: Option<&Weather<'_>>, time: DateTime<Utc>) -> Step {
     let (chance, prominence, limited_by) = match sight.limit {
         Some(limit) => (Some(0.0), Some(0.0), Some(limit)),
         None => match weather.and_then(|weather| weather.judge(&sight, time.timestamp())) {
-            Some(verdict) => {
-                (Some(round(verdict.chance, 4)), Some(round(verdict.prominence, 4)), verdict.limit)
-            }
+            Some(verdict) => (Some(round(verdict.chance, 4)), Some(round(verdict.prominence, 4)), verdict.limit),
             None => (None, None, Some(Limit::NoData)),
         },
     };
@@ -82,14 +82,14 @@ pub fn sky_events(ask: &Ask) -> Vec<SkyEvent> {
     let sun = crossings(|time| Sun::at(observer, time).over_horizon_deg(observer), ask.from, to, SEARCH_STEP);
     let bow = crossings(|time| margin_deg(observer, ask.radius_deg, time), ask.from, to, SEARCH_STEP);
     let named = |begins: bool, rise, set| if begins { rise } else { set };
-    let mut events: Vec<SkyEvent> = sun
-        .iter()
-        .map(|c| SkyEvent { time: c.time, event: named(c.begins, SkyEventKind::Sunrise, SkyEventKind::Sunset) })
-        .chain(
-            bow.iter()
-                .map(|c| SkyEvent { time: c.time, event: named(c.begins, SkyEventKind::BowRises, SkyEventKind::BowSets) }),
-        )
-        .collect();
+    let mut events: Vec<SkyEvent> =
+        sun.iter()
+            .map(|c| SkyEvent { time: c.time, event: named(c.begins, SkyEventKind::Sunrise, SkyEventKind::Sunset) })
+            .chain(bow.iter().map(|c| SkyEvent {
+                time: c.time,
+                event: named(c.begins, SkyEventKind::BowRises, SkyEventKind::BowSets),
+            }))
+            .collect();
     events.sort_by_key(|event| event.time);
     events
 }
@@ -122,7 +122,9 @@ pub fn assumed(field: &Field, ask: &Ask) -> Vec<Assumption> {
         (true, true) => {}
         (false, true) => say("freezing_level", "from the temperature, 6.5 K/km".into()),
         (true, false) => say("temperature", "snow only where the freezing level lies on the ground".into()),
-        (false, false) => say("temperature", format!("taken as above {SNOW_BELOW_C} Cel: everything that falls is rain")),
+        (false, false) => {
+            say("temperature", format!("taken as above {SNOW_BELOW_C} Cel: everything that falls is rain"))
+        }
     }
     if !has(Quantity::Visibility) {
         say("visibility", format!("taken as {FARTHEST_KM} km"));
@@ -134,7 +136,9 @@ pub fn assumed(field: &Field, ask: &Ask) -> Vec<Assumption> {
         } else {
             say(
                 "wind",
-                format!("one point without wind: the same weather all round, errors taken {WIDER_WITHOUT_WIND} times wider"),
+                format!(
+                    "one point without wind: the same weather all round, errors taken {WIDER_WITHOUT_WIND} times wider"
+                ),
             );
         }
     }

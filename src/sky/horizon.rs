@@ -127,10 +127,7 @@ mod tests {
         assert_eq!(Skyline::new(&[]), Ok(None));
         assert_eq!(Skyline::new(&[(0.0, 1.0), (360.0, 2.0)]), Err(SkylineError::Twice(0.0)));
         let refusal = Skyline::new(&[(0.0, 1.0), (10.0, 91.0)]).unwrap_err().to_string();
-        assert_eq!(
-            refusal,
-            "skyline point 1: 91 is out of range: skyline elevation must lie between -90 and 90 deg"
-        );
+        assert_eq!(refusal, "skyline point 1: 91 is out of range: skyline elevation must lie between -90 and 90 deg");
         assert!(Skyline::new(&[(f64::NAN, 1.0)]).is_err());
     }
 }

@@ -46,9 +46,10 @@ pub fn crossings(
         ms = (ms + step_ms).min(end_ms);
         let value = at(ms);
         if let Some(before) = samples[2]
-            && (before.1 >= 0.0) != (value >= 0.0) {
-                found.push(narrow(&mut at, before, (ms, value)));
-            }
+            && (before.1 >= 0.0) != (value >= 0.0)
+        {
+            found.push(narrow(&mut at, before, (ms, value)));
+        }
         samples = [samples[1], samples[2], Some((ms, value))];
     }
     found.sort_unstable();

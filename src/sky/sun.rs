@@ -28,8 +28,10 @@ impl Sun {
     pub fn at(observer: &Observer, time: DateTime<Utc>) -> Self {
         let airless = airless(observer.place, time);
         let elevation_deg = airless.elevation_deg();
-        let apparent =
-            Direction::from_angles(airless.azimuth_deg(), elevation_deg + refraction_deg(elevation_deg, observer.air()));
+        let apparent = Direction::from_angles(
+            airless.azimuth_deg(),
+            elevation_deg + refraction_deg(elevation_deg, observer.air()),
+        );
         Self { airless, apparent }
     }
 

@@ -18,8 +18,9 @@ fn skyline() -> impl Strategy<Value = Vec<(f64, f64)>> {
 }
 
 fn gentle_skyline() -> impl Strategy<Value = Vec<(f64, f64)>> {
-    prop::collection::btree_map(0_u16..36, -3.0..25.0_f64, 1..20)
-        .prop_map(|points| points.into_iter().map(|(azimuth, elevation)| (10.0 * f64::from(azimuth), elevation)).collect())
+    prop::collection::btree_map(0_u16..36, -3.0..25.0_f64, 1..20).prop_map(|points| {
+        points.into_iter().map(|(azimuth, elevation)| (10.0 * f64::from(azimuth), elevation)).collect()
+    })
 }
 
 fn sampled_fraction(circle: &Circle, horizon: &Horizon) -> f64 {
