@@ -12,6 +12,9 @@ use crate::bounds::Place;
 /// Mean radius of the Earth, km (IUGG).
 const EARTH_KM: f64 = 6371.0088;
 
+/// Length of a degree of a great circle, km.
+const KM_PER_DEG: f64 = EARTH_KM * std::f64::consts::PI / 180.0;
+
 /// How far from its place the series of one point still speaks for the weather, km.
 pub const POINT_REACH_KM: f64 = 50.0;
 
@@ -164,8 +167,7 @@ impl Times {
                 }
                 let next = *times.get(after)?;
                 let gap_s = next - times[before];
-                (gap_s <= MAX_GAP_S)
-                    .then(|| (before, after, ((time_s - times[before]) as f64 / gap_s as f64) as f32))
+                (gap_s <= MAX_GAP_S).then(|| (before, after, ((time_s - times[before]) as f64 / gap_s as f64) as f32))
             }
             Self::Periods(periods) => {
                 let after = periods.partition_point(|period| period.start <= time_s);
@@ -357,7 +359,7 @@ fn round_the_globe(lons_deg: &[f64]) -> Option<f64> {
 fn along(axis: &[f64], value: f64, closing: Option<f64>) -> Option<(usize, usize, f64)> {
     let last = axis.len() - 1;
     if last == 0 {
-        return Some((0, 0, 0.0));
+        return ((value - axis[0]).abs() * KM_PER_DEG <= POINT_REACH_KM).then_some((0, 0, 0.0));
     }
     let after = axis.partition_point(|&tick| tick <= value);
     if after == 0 {

@@ -51,20 +51,27 @@ const TEMPERATURE: Measure = Measure::Plain(Dimension::Temperature);
 /// 25.4 mm, 1852 m/h).
 const TABLE: &[Row] = &[
     row("mm/h", &["mm h-1", "mm.h-1", "mm/hr", "mm h^-1", "mm per hour"], &[(RATE, 1.0, 0.0)]),
-    row("mm", &["millimeter", "millimetre", "millimeters", "millimetres"], &[
-        (Measure::Amount, 1.0, 0.0),
-        (LENGTH, 0.001, 0.0),
-    ]),
+    row(
+        "mm",
+        &["millimeter", "millimetre", "millimeters", "millimetres"],
+        &[(Measure::Amount, 1.0, 0.0), (LENGTH, 0.001, 0.0)],
+    ),
     row("cm", &["centimeter", "centimetre"], &[(Measure::Amount, 10.0, 0.0), (LENGTH, 0.01, 0.0)]),
-    row("kg.m-2.s-1", &["kg m-2 s-1", "kg/m2/s", "kg/(m2.s)", "kg m**-2 s**-1", "kg m^-2 s^-1"], &[(RATE, 3600.0, 0.0)]),
+    row(
+        "kg.m-2.s-1",
+        &["kg m-2 s-1", "kg/m2/s", "kg/(m2.s)", "kg m**-2 s**-1", "kg m^-2 s^-1"],
+        &[(RATE, 3600.0, 0.0)],
+    ),
     row("kg.m-2.h-1", &["kg m-2 h-1", "kg/m2/h", "kg/(m2.h)", "kg m**-2 h**-1"], &[(RATE, 1.0, 0.0)]),
     row("kg.m-2", &["kg m-2", "kg/m2", "kg m**-2", "kg m^-2", "kg/m^2"], &[(Measure::Amount, 1.0, 0.0)]),
     row("%", &["percent", "per cent", "pct"], &[(SHARE, 0.01, 0.0)]),
     row("1", &["(0 - 1)", "0-1", "fraction", "ratio"], &[(SHARE, 1.0, 0.0)]),
     row("{okta}", &["okta", "oktas", "octa", "octas", "1/8"], &[(SHARE, 0.125, 0.0)]),
-    row("Cel", &["°C", "˚C", "ºC", "degC", "deg_C", "celsius", "degree_celsius", "degrees celsius", "degree celsius"], &[
-        (TEMPERATURE, 1.0, 0.0),
-    ]),
+    row(
+        "Cel",
+        &["°C", "˚C", "ºC", "degC", "deg_C", "celsius", "degree_celsius", "degrees celsius", "degree celsius"],
+        &[(TEMPERATURE, 1.0, 0.0)],
+    ),
     row("K", &["kelvin", "degK", "deg_K"], &[(TEMPERATURE, 1.0, -273.15)]),
     row("[degF]", &["°F", "˚F", "degF", "fahrenheit", "degree fahrenheit"], &[(TEMPERATURE, 5.0 / 9.0, -160.0 / 9.0)]),
     row("m/s", &["m s-1", "m.s-1", "m s**-1", "m s^-1", "m_s-1", "mps"], &[(SPEED, 1.0, 0.0), (RATE, 3.6e6, 0.0)]),
@@ -81,11 +88,7 @@ const TABLE: &[Row] = &[
     row("rad", &["radian", "radians"], &[(ANGLE, 180.0 / std::f64::consts::PI, 0.0)]),
 ];
 
-const fn row(
-    code: &'static str,
-    spellings: &'static [&'static str],
-    meanings: &'static [(Measure, f64, f64)],
-) -> Row {
+const fn row(code: &'static str, spellings: &'static [&'static str], meanings: &'static [(Measure, f64, f64)]) -> Row {
     Row { code, spellings, meanings }
 }
 

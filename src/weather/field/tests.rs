@@ -5,8 +5,7 @@ fn place(lat_deg: f64, lon_deg: f64) -> Place {
 }
 
 fn grid(lats_deg: &[f64], lons_deg: &[f64], values: Vec<f32>) -> Field {
-    let mut field =
-        Field::new(Space::Grid { lats_deg: lats_deg.to_vec(), lons_deg: lons_deg.to_vec() }, None).unwrap();
+    let mut field = Field::new(Space::Grid { lats_deg: lats_deg.to_vec(), lons_deg: lons_deg.to_vec() }, None).unwrap();
     field.insert(Quantity::Temperature, Series { times: Times::Instants(vec![0]), values }).unwrap();
     field
 }
