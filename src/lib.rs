@@ -7,7 +7,7 @@
 //! - [`weather`]: feeds (fetch, cache, formats) and fields (what they say at a place and time).
 //! - [`outlook`]: sky and weather into chance, prominence, timeline and windows.
 //! - [`demo`]: an invented coast under invented showers; [`config`]: the one reader of configuration.
-//! - `service`: HTTP: routes, problems, page.
+//! - [`service`]: HTTP: routes, problems, page.
 
 pub mod bounds;
 pub mod clock;
@@ -15,5 +15,6 @@ pub mod config;
 pub mod demo;
 pub mod optics;
 pub mod outlook;
+pub mod service;
 pub mod sky;
 pub mod weather;

@@ -1,5 +1,6 @@
 //! The weather laid round an observer: one field, asked at distances east and north of the eye.
 
+use crate::bounds::Place;
 use crate::sky::observer::Observer;
 use crate::weather::field::{Field, Series, Space};
 use crate::weather::quantity::Quantity;
@@ -15,8 +16,7 @@ const SLOWEST_WIND_M_S: f64 = 1.0;
 pub struct Scene<'a> {
     field: &'a Field,
     cells: usize,
-    lat_deg: f64,
-    lon_deg: f64,
+    place: Place,
     lon_per_km: f64,
 }
 
@@ -41,10 +41,10 @@ pub struct Instant<'a> {
 impl<'a> Scene<'a> {
     /// The scene round an observer; none when the field does not reach there.
     pub fn new(field: &'a Field, observer: &Observer) -> Option<Self> {
-        let (lat_deg, lon_deg) = (observer.place.lat_deg(), observer.place.lon_deg());
-        field.corners(lat_deg, lon_deg)?;
-        let lon_per_km = 1.0 / (KM_PER_DEG * lat_deg.to_radians().cos().max(0.01));
-        Some(Self { field, cells: field.cells(), lat_deg, lon_deg, lon_per_km })
+        let place = observer.place;
+        field.corners(place.lat_deg(), place.lon_deg())?;
+        let lon_per_km = 1.0 / (KM_PER_DEG * place.lat_deg().to_radians().cos().max(0.01));
+        Some(Self { field, cells: field.cells(), place, lon_per_km })
     }
 
     /// Whether the weather stands at one point only and has to be laid out by the wind.
@@ -54,10 +54,7 @@ impl<'a> Scene<'a> {
 
     /// The value overhead at a time, where the field has one.
     pub fn overhead(&self, quantity: Quantity, time_s: i64) -> Option<f64> {
-        let series = self.field.series(quantity)?;
-        let corners = self.field.corners(self.lat_deg, self.lon_deg)?;
-        let value = series.sample(self.cells, series.times.bracket(time_s)?, &corners);
-        value.is_finite().then(|| f64::from(value))
+        self.field.at(quantity, self.place, time_s).map(f64::from)
     }
 
     /// The wind overhead, from its components or from speed and direction.
@@ -102,8 +99,8 @@ impl Instant<'_> {
         if self.scene.is_point() {
             return series.sample(1, bracket, &[(0, 1.0), (0, 0.0), (0, 0.0), (0, 0.0)]);
         }
-        let lat_deg = self.scene.lat_deg + north_km / KM_PER_DEG;
-        let lon_deg = self.scene.lon_deg + east_km * self.scene.lon_per_km;
+        let lat_deg = self.scene.place.lat_deg() + north_km / KM_PER_DEG;
+        let lon_deg = self.scene.place.lon_deg() + east_km * self.scene.lon_per_km;
         match self.scene.field.corners(lat_deg, lon_deg) {
             Some(corners) => series.sample(self.scene.cells, bracket, &corners),
             None => f32::NAN,

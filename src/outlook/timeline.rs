@@ -123,7 +123,7 @@ pub fn assumed(field: &Field, ask: &Ask) -> Vec<Assumption> {
         (false, true) => say("freezing_level", "from the temperature, 6.5 K/km".into()),
         (true, false) => say("temperature", "snow only where the freezing level lies on the ground".into()),
         (false, false) => {
-            say("temperature", format!("taken as above {SNOW_BELOW_C} Cel: everything that falls is rain"))
+            say("temperature", format!("taken as above {SNOW_BELOW_C} Cel: everything that falls is rain"));
         }
     }
     if !has(Quantity::Visibility) {

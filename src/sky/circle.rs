@@ -65,7 +65,7 @@ impl Circle {
     pub fn over(&self, horizon: &Horizon) -> Arc {
         let runs = match horizon {
             Horizon::Level(limit_deg) => self.over_level(*limit_deg),
-            Horizon::Skyline(skyline) => self.over_skyline(skyline),
+            Horizon::Skyline(skyline) => self.over_skyline(horizon, skyline),
         };
         self.arc(runs)
     }
@@ -76,7 +76,7 @@ impl Circle {
             Horizon::Level(limit_deg) => self.point(0.0).elevation_deg() - limit_deg,
             Horizon::Skyline(skyline) => {
                 let best = self
-                    .sample_angles(skyline)
+                    .sample_angles(horizon)
                     .into_iter()
                     .map(|angle| (angle, self.clearance_deg(skyline, angle)))
                     .max_by(|a, b| a.1.total_cmp(&b.1))
@@ -108,9 +108,9 @@ impl Circle {
 
     /// Even samples and the places where the circle passes over a corner of the skyline: between two of them the skyline
     /// is one straight line.
-    fn sample_angles(&self, skyline: &Skyline) -> Vec<f64> {
+    fn sample_angles(&self, horizon: &Horizon) -> Vec<f64> {
         let mut angles: Vec<f64> = (0..SAMPLES).map(|index| -PI + TAU * index as f64 / SAMPLES as f64).collect();
-        for &(azimuth_deg, _) in skyline.points() {
+        for &(azimuth_deg, _) in horizon.points() {
             angles.extend(self.angles_at_azimuth(azimuth_deg).into_iter().flatten());
         }
         angles.sort_by(f64::total_cmp);
@@ -134,9 +134,8 @@ impl Circle {
         })
     }
 
-    fn over_skyline(&self, skyline: &Skyline) -> Vec<(f64, f64)> {
-        let angles = self.sample_angles(skyline);
-        let horizon = Horizon::Skyline(skyline.clone());
+    fn over_skyline(&self, horizon: &Horizon, skyline: &Skyline) -> Vec<(f64, f64)> {
+        let angles = self.sample_angles(horizon);
         let (lowest_deg, highest_deg) = horizon.extent_deg();
         let (surely_hidden, surely_visible) = (lowest_deg.to_radians().sin(), highest_deg.to_radians().sin());
         let margin = BULGE_DEG.to_radians();

@@ -64,11 +64,6 @@ impl Skyline {
         Ok((!points.is_empty()).then_some(Self { points, lowest_deg, highest_deg }))
     }
 
-    /// The points by rising azimuth, degrees.
-    pub fn points(&self) -> &[(f64, f64)] {
-        &self.points
-    }
-
     /// Elevation of the skyline at an azimuth in [0, 360], degrees.
     pub fn elevation_deg(&self, azimuth_deg: f64) -> f64 {
         let count = self.points.len();
@@ -98,6 +93,14 @@ impl Horizon {
         match self {
             Self::Level(elevation) => *elevation,
             Self::Skyline(skyline) => skyline.elevation_deg(azimuth_deg),
+        }
+    }
+
+    /// The points of the skyline by rising azimuth, degrees; none where the horizon is level.
+    pub fn points(&self) -> &[(f64, f64)] {
+        match self {
+            Self::Level(_) => &[],
+            Self::Skyline(skyline) => &skyline.points,
         }
     }
 

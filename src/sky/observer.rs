@@ -27,6 +27,15 @@ impl Observer {
         Self { place, ground_m, eye_height_m, dip_deg: dip, horizon }
     }
 
+    /// The same observer with the eye at another height; a skyline stays as it was seen.
+    pub fn with_eye_height(&self, eye_height_m: f64) -> Self {
+        let skyline = match &self.horizon {
+            Horizon::Level(_) => None,
+            Horizon::Skyline(skyline) => Some(skyline.clone()),
+        };
+        Self::new(self.place, self.ground_m, eye_height_m, skyline)
+    }
+
     /// The air at the eye, for refraction.
     pub fn air(&self) -> Air {
         Air::at_height(self.ground_m + self.eye_height_m)

@@ -1,12 +1,22 @@
 //! A field: weather read from one document, asked for one value at a place and time.
 
+use std::collections::BTreeMap;
 use std::ops::Range;
 
 use chrono::{DateTime, Utc};
 use thiserror::Error;
 
-use super::quantity::Quantity;
+use super::quantity::{Dimension, Quantity};
 use crate::bounds::Place;
+
+/// Mean radius of the Earth, km (IUGG).
+const EARTH_KM: f64 = 6371.0088;
+
+/// Length of a degree of a great circle, km.
+const KM_PER_DEG: f64 = EARTH_KM * std::f64::consts::PI / 180.0;
+
+/// How far from its place the series of one point still speaks for the weather, km.
+pub const POINT_REACH_KM: f64 = 50.0;
 
 /// Longest gap between two time stamps across which a state is interpolated, s.
 pub const MAX_GAP_S: i64 = 6 * 3600;
@@ -21,8 +31,12 @@ pub struct Field {
     pub issued: Option<DateTime<Utc>>,
     /// Where the values stand.
     pub space: Space,
+    /// Whether the document itself says where its values stand; if not, they are taken to stand where they were asked for.
+    pub located: bool,
     /// What the reader passed over, in words for `feed check`.
     pub notes: Vec<String>,
+    /// Where each quantity was found in the document.
+    pub origins: BTreeMap<Quantity, Origin>,
     series: [Option<Series>; Quantity::ALL.len()],
 }
 
@@ -38,6 +52,17 @@ pub enum Space {
         /// Longitudes, ascending; may run beyond 180.
         lons_deg: Vec<f64>,
     },
+}
+
+/// Where and how a quantity stood in its document.
+#[derive(Debug, Clone, PartialEq)]
+pub struct Origin {
+    /// Pointer or name of the parameter.
+    pub at: String,
+    /// Unit there (UCUM).
+    pub unit: &'static str,
+    /// Values of the document that were missing or left out.
+    pub missing: usize,
 }
 
 /// The values of one quantity, in the unit of [`Quantity::unit`].
@@ -172,7 +197,14 @@ impl Field {
                 return Err(FieldError::Axis("longitude"));
             }
         }
-        Ok(Self { issued, space, notes: Vec::new(), series: std::array::from_fn(|_| None) })
+        Ok(Self {
+            issued,
+            space,
+            located: true,
+            notes: Vec::new(),
+            origins: BTreeMap::new(),
+            series: std::array::from_fn(|_| None),
+        })
     }
 
     /// Number of places at which values stand.
@@ -181,6 +213,17 @@ impl Field {
             Space::Point(_) => 1,
             Space::Grid { lats_deg, lons_deg } => lats_deg.len() * lons_deg.len(),
         }
+    }
+
+    /// Memory that the values and axes take, bytes.
+    pub fn bytes(&self) -> usize {
+        let axes = match &self.space {
+            Space::Point(_) => 0,
+            Space::Grid { lats_deg, lons_deg } => 8 * (lats_deg.len() + lons_deg.len()),
+        };
+        let series: usize =
+            self.series.iter().flatten().map(|series| 4 * series.values.len() + 16 * series.times.len()).sum();
+        size_of::<Self>() + axes + series
     }
 
     /// Adds or replaces the values of a quantity.
@@ -223,20 +266,29 @@ impl Field {
     }
 
     /// The value of a quantity at a place and time: bilinear in space, linear in time for states, constant within
-    /// its period for rates. None outside the area or time, in a gap longer than [`MAX_GAP_S`], or where missing.
-    /// A field of one point speaks for its surroundings.
+    /// its period for rates; directions by the mean of their unit vectors. None outside the area or time, in a gap
+    /// longer than [`MAX_GAP_S`], or where missing. A field of one point speaks for [`POINT_REACH_KM`] around it.
     pub fn at(&self, quantity: Quantity, place: Place, time_s: i64) -> Option<f32> {
         let series = self.series(quantity)?;
         let bracket = series.times.bracket(time_s)?;
         let corners = self.corners(place.lat_deg(), place.lon_deg())?;
-        let value = series.sample(self.cells(), bracket, &corners);
+        let value = if quantity.dimension() == Dimension::Angle {
+            series.sample_direction(self.cells(), bracket, &corners)
+        } else {
+            series.sample(self.cells(), bracket, &corners)
+        };
         value.is_finite().then_some(value)
     }
 
     /// The four cells around a place and their weights; none outside the area.
     pub fn corners(&self, lat_deg: f64, lon_deg: f64) -> Option<[(usize, f32); 4]> {
         match &self.space {
-            Space::Point(_) => Some([(0, 1.0), (0, 0.0), (0, 0.0), (0, 0.0)]),
+            Space::Point(point) => (distance_km(point, lat_deg, lon_deg) <= POINT_REACH_KM).then_some([
+                (0, 1.0),
+                (0, 0.0),
+                (0, 0.0),
+                (0, 0.0),
+            ]),
             Space::Grid { lats_deg, lons_deg } => {
                 let west = *lons_deg.first()?;
                 let turn = (lon_deg - west).div_euclid(360.0) * 360.0;
@@ -259,18 +311,40 @@ impl Field {
 
 impl Series {
     /// Weighted mean over cells and times; NaN where a contributing value is missing.
-    pub fn sample(
+    pub fn sample(&self, cells: usize, bracket: (usize, usize, f32), corners: &[(usize, f32); 4]) -> f32 {
+        self.mean(cells, bracket, corners, |value| value)
+    }
+
+    /// Weighted mean of directions in degrees, 0..360: that of their unit vectors, so that 350 and 10 make 0. NaN where
+    /// a contributing value is missing or the directions cancel.
+    pub fn sample_direction(&self, cells: usize, bracket: (usize, usize, f32), corners: &[(usize, f32); 4]) -> f32 {
+        let east = self.mean(cells, bracket, corners, |value| value.to_radians().sin());
+        let north = self.mean(cells, bracket, corners, |value| value.to_radians().cos());
+        if east.hypot(north) > 1e-4 { east.atan2(north).to_degrees().rem_euclid(360.0) } else { f32::NAN }
+    }
+
+    fn mean(
         &self,
         cells: usize,
         (before, after, weight): (usize, usize, f32),
         corners: &[(usize, f32); 4],
+        part: impl Fn(f32) -> f32,
     ) -> f32 {
         let slice = |index: usize| {
             let values = &self.values[index * cells..(index + 1) * cells];
-            corners.iter().filter(|corner| corner.1 > 0.0).map(|&(cell, share)| values[cell] * share).sum::<f32>()
+            corners.iter().filter(|corner| corner.1 > 0.0).map(|&(cell, share)| part(values[cell]) * share).sum::<f32>()
         };
         if weight <= 0.0 { slice(before) } else { slice(before) * (1.0 - weight) + slice(after) * weight }
     }
+}
+
+/// Great-circle distance, km, by the haversine formula (Sinnott 1984) on a sphere; within 0.6 % of the ellipsoid.
+fn distance_km(from: &Place, lat_deg: f64, lon_deg: f64) -> f64 {
+    let (here, there) = (from.lat_deg().to_radians(), lat_deg.to_radians());
+    let across = ((lon_deg - from.lon_deg()).to_radians() / 2.0).sin();
+    let along = ((there - here) / 2.0).sin();
+    let h = along * along + here.cos() * there.cos() * across * across;
+    2.0 * EARTH_KM * h.clamp(0.0, 1.0).sqrt().asin()
 }
 
 /// Step that closes a longitude axis round the globe, where it does.
@@ -285,7 +359,7 @@ fn round_the_globe(lons_deg: &[f64]) -> Option<f64> {
 fn along(axis: &[f64], value: f64, closing: Option<f64>) -> Option<(usize, usize, f64)> {
     let last = axis.len() - 1;
     if last == 0 {
-        return Some((0, 0, 0.0));
+        return ((value - axis[0]).abs() * KM_PER_DEG <= POINT_REACH_KM).then_some((0, 0, 0.0));
     }
     let after = axis.partition_point(|&tick| tick <= value);
     if after == 0 {
@@ -301,3 +375,6 @@ fn along(axis: &[f64], value: f64, closing: Option<f64>) -> Option<(usize, usize
     let before = after - 1;
     Some((before, after, (value - axis[before]) / (axis[after] - axis[before])))
 }
+
+#[cfg(test)]
+mod tests;

@@ -6,6 +6,7 @@
 pub mod coveragejson;
 pub mod feeds;
 pub mod field;
+mod intake;
 pub mod json;
 pub mod quantity;
 pub mod read;

@@ -3,7 +3,7 @@
 use thiserror::Error;
 
 use super::field::{Field, FieldError};
-use super::spec::{FeedSpec, Format};
+use super::spec::{CoverageMapping, FeedSpec, Format};
 use super::{coveragejson, json};
 use crate::bounds::Place;
 
@@ -32,6 +32,20 @@ pub enum ReadError {
     Field(#[from] FieldError),
 }
 
+/// The text of a document, without a byte order mark.
+pub(super) fn text(bytes: &[u8]) -> Result<&str, ReadError> {
+    let malformed = |what: &str| Err(ReadError::Malformed(what.to_owned()));
+    let text = match std::str::from_utf8(bytes) {
+        Ok(text) => text.trim_start_matches('\u{feff}').trim_start(),
+        Err(error) => return Err(ReadError::Malformed(format!("not UTF-8 from byte {}", error.valid_up_to()))),
+    };
+    match text.as_bytes().first() {
+        None => malformed("it is empty"),
+        Some(b'<') => malformed("HTML or XML instead of data"),
+        Some(_) => Ok(text),
+    }
+}
+
 /// Reads a document.
 ///
 /// # Errors
@@ -46,7 +60,7 @@ pub fn read(bytes: &[u8], spec: &FeedSpec, asked: Place) -> Result<Field, ReadEr
             json::read(bytes, mapping, asked)
         }
         Format::Coveragejson => {
-            coveragejson::read(bytes, spec.coveragejson.as_ref().unwrap_or(&Default::default()), asked)
+            coveragejson::read(bytes, spec.coveragejson.as_ref().unwrap_or(&CoverageMapping::default()), asked)
         }
     }
 }

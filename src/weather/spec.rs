@@ -125,6 +125,9 @@ pub struct ValueMapping {
     pub over_min: Option<f64>,
     /// Whether that period lies before or after the time stamp.
     pub period: Option<Side>,
+    /// Pointer within a step to the time at which the period of an amount began, in place of `over_min` and `period`;
+    /// the period ends at the step's time. For feeds whose periods change along the forecast.
+    pub since: Option<String>,
     /// Numbers that stand for a missing value.
     #[serde(default)]
     pub missing: Vec<f64>,
