@@ -83,6 +83,11 @@ function placeName({ site, lat, lon }) {
   return words.place.position(coordinate(Number(lat)), coordinate(Number(lon)));
 }
 
+function takeSites(sites) {
+  state.sites = sites;
+  if (state.place) setText(byId("place-name"), placeName(state.place));
+}
+
 /** Takes a place for good: name, address bar, memory. */
 function settle(place) {
   state.place = place;
@@ -106,7 +111,7 @@ async function load(place) {
     [outlook, feeds] = await Promise.all([
       fetchOutlook(place, control.signal),
       fetchFeeds(control.signal).then((answer) => answer.feeds),
-      ...(state.sites.length ? [] : [fetchSites(control.signal).then((answer) => (state.sites = answer.sites))]),
+      ...(state.sites.length ? [] : [fetchSites(control.signal).then((answer) => takeSites(answer.sites))]),
     ]);
   } catch (error) {
     if (state.loading === control) {
@@ -179,7 +184,7 @@ async function begin() {
   state.tried = Date.now();
   tellNotice();
   try {
-    state.sites = (await fetchSites(control.signal)).sites;
+    takeSites((await fetchSites(control.signal)).sites);
     state.loading = null;
     state.failure = null;
     tellNotice();
@@ -224,6 +229,12 @@ new ResizeObserver(() => {
   else view.drawEmpty();
 }).observe(byId("sky"));
 
+new ResizeObserver(([dock]) => {
+  document.documentElement.style.setProperty("--dock-height", `${dock.target.offsetHeight}px`);
+}).observe(document.querySelector(".dock"));
+
 for (const id of ["key-back", "key-on", "key-next"]) byId(id).disabled = true;
 setText(byId("place-name"), words.place.none);
+view.measure();
+view.drawEmpty();
 begin();

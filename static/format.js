@@ -52,6 +52,6 @@ export function plainNumber(text) {
   const found = NUMBER.exec(text);
   if (!found) return text.trim();
   const [, sign, digits, letter] = found;
-  const negative = (sign && sign !== "+") !== /[SW]/i.test(letter);
+  const negative = ["-", "−"].includes(sign) !== /[SW]/i.test(letter);
   return (negative ? "-" : "") + digits.replace(",", ".");
 }

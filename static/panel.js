@@ -42,11 +42,13 @@ export function showSay([before, strong = "", after = ""]) {
 
 export function makeFacts() {
   const list = byId("facts");
+  list.hidden = true;
   for (const name of NUMBER_FACTS) list.append(el("div", {}, el("dt", {}, words.facts[name][0]), el("dd", { id: `fact-${name}` })));
 }
 
 /** Texts of one step; called for every step that passes under the needle. */
 export function showStep(outlook, step, feet, magnetic_offset_deg, now) {
+  byId("facts").hidden = false;
   const ms = Date.parse(step.time);
   showSay(sayParts(outlook, step, ms, now));
   setText(byId("why"), words.why(step, belowHorizon(step, outlook)));

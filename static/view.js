@@ -67,15 +67,17 @@ export class SkyView {
   drawEmpty() {
     this.drawLand(this.camera(0), { dip_deg: 0, skyline: [] });
     set(this.night, { opacity: 0.25 });
+    setText(this.title(), words.sky.empty);
   }
 
-  /** Draws one step of an outlook. */
+  /** Draws one step of an outlook, and leaves the parameters of its projection on the node, as data. */
   draw(step, outlook, label) {
     const axis = step.antisolar_point;
     const horizon = outlook.observer.horizon;
     const camera = this.camera(axis.azimuth_deg);
     const sun_up = step.sun.elevation_deg > 0;
     const radii = outlook.radius_deg;
+    for (const name of ["azimuth_deg", "scale", "x0", "y0"]) this.node.dataset[name] = camera[name];
     this.drawLight(step.sun.elevation_deg);
     this.drawBows(camera, axis, radii, step, sun_up);
     this.drawLand(camera, horizon);
@@ -161,8 +163,8 @@ export class SkyView {
     if (sun_up) marks.push(text(width / 2, height - size * 0.65, words.sky.face(az), { class: "face", "text-anchor": "middle" }));
 
     // bearings along the horizon: the feet first, then the even ones that still find room
-    const base = Math.max(at(0).y, at(-horizon.dip_deg).y);
-    const row = base + size * 1.5;
+    const level = -horizon.dip_deg;
+    const row = at(level).y + size * 1.5;
     const taken = [[width / 2 - size * 0.6, width / 2 + size * 0.6]];
     const place = (x, content, attributes) => {
       const w = textWidth(content, size) + size * 0.5;
@@ -180,7 +182,7 @@ export class SkyView {
       place(x, bearing(f.azimuth_deg), { class: "foot" });
     });
     for (let a = Math.ceil((az - 100) / 5) * 5; a <= az + 100; a += 5) {
-      const { x, y } = at(0, a);
+      const { x, y } = at(level, a);
       if (x < 0 || x > width) continue;
       const strong = a % 15 === 0;
       ring.push(svg("line", { class: "tick", x1: x, x2: x, y1: y, y2: y + size * (strong ? 0.45 : 0.25) }));
@@ -222,12 +224,9 @@ export class SkyView {
     const [name, depth] = words.sky.antisolar(axis.elevation_deg);
     const line = Math.max(py + size * 0.35, row + size * 1.4);
     const left = x + size;
-    const whole = `${name}, ${depth}`;
-    if (textWidth(whole, size) < width - left) {
-      marks.push(text(left, Math.min(line, bottom - size * 0.5), whole));
-    } else {
-      const second = Math.min(line + size * 1.2, bottom - size * 0.5);
-      marks.push(text(left, second - size * 1.2, name), text(left, second, depth));
-    }
+    const fits = (words) => textWidth(words, size) < width - left;
+    const lines = fits(`${name}, ${depth}`) ? [`${name}, ${depth}`] : [name, depth].filter(fits);
+    const first = Math.min(line, bottom - size * 0.5 - size * 1.2 * (lines.length - 1));
+    lines.forEach((words, i) => marks.push(text(left, first + size * 1.2 * i, words)));
   }
 }

@@ -4,12 +4,10 @@ import { bearing, chance, degrees, fine, fists, span, wind } from "./format.js";
 
 /** Texts that stand still, by the data-word and data-label names in index.html. */
 export const still = {
-  skip_to_time: "Skip to the time control",
   sky_label: "The sky opposite the Sun",
   say_label: "What to do",
   windows_title: "Good windows",
-  hours_title: "Hour by hour",
-  hours_note: "What holds the bow back most, and when.",
+  hours_title: "Hour by hour: what holds the bow back",
   weather_title: "Weather behind this",
   assumed_title: "Assumed, because the feed does not say",
   cautions_title: "Before you go",
@@ -139,6 +137,7 @@ export const sky = {
   hidden: (below_deg) => (below_deg > 0 ? ["crown " + fine(below_deg), "below the horizon"] : ["behind the land"]),
   antisolar: (el) => ["antisolar point", `${fine(-el)} down`],
   sun_down: "the Sun is down",
+  empty: "An empty horizon: no outlook yet.",
   staff_degrees: (el) => `${el}°`,
   staff_fists: (el) => (el === 10 ? "1 fist" : `${el / 10}`),
   describe: (when, step, feet) =>

@@ -26,11 +26,12 @@ async function browserWith(flags) {
  * Opens the page in a context of its own. `errors` collects console errors, uncaught exceptions and breaches of the
  * content policy; `prepare(page)` may set routes before the page loads.
  */
-export async function openPage({ viewport = { width: 360, height: 740 }, scheme = "light", path = "", largeText = false, geolocation = null, permissions = [], touch = false, reducedMotion = "no-preference", prepare = null } = {}) {
+export async function openPage({ viewport = { width: 360, height: 740 }, scheme = "light", path = "", largeText = false, geolocation = null, permissions = [], touch = false, reducedMotion = "no-preference", deviceScaleFactor = 1, movingClock = false, prepare = null } = {}) {
   const browser = await browserWith(largeText ? ["--blink-settings=defaultFontSize=32"] : []);
-  const context = await browser.newContext({ viewport, colorScheme: scheme, geolocation: geolocation ?? undefined, permissions, hasTouch: touch, reducedMotion, timezoneId: "Europe/Lisbon", locale: "en-GB" });
+  const context = await browser.newContext({ viewport, colorScheme: scheme, geolocation: geolocation ?? undefined, permissions, hasTouch: touch, reducedMotion, deviceScaleFactor, timezoneId: "Europe/Lisbon", locale: "en-GB" });
   const page = await context.newPage();
-  if (!real) await page.clock.setFixedTime(MOCK_NOW);
+  if (movingClock) await page.clock.install({ time: real ? Date.now() : MOCK_NOW });
+  else if (!real) await page.clock.setFixedTime(MOCK_NOW);
   const errors = [];
   page.on("console", (m) => m.type() === "error" && errors.push(m.text()));
   page.on("pageerror", (e) => errors.push(String(e)));
