@@ -65,6 +65,7 @@ function accept(answer) {
   state.answer = answer;
   const now = Date.now();
   timeline.load({ steps: outlook.steps, windows: outlook.windows, times: outlook.steps.map((s) => Date.parse(s.time)), now });
+  byId("reading").hidden = false;
   showWindows(outlook, now, chooseMoment);
   showHours(outlook, now);
   tellNotice();
