@@ -121,7 +121,7 @@ pub struct ValueMapping {
     pub at: String,
     /// Unit of the number (UCUM).
     pub unit: Unit,
-    /// Period over which an amount was gathered, minutes.
+    /// Period over which an amount of rain was gathered or its rate averaged, minutes.
     pub over_min: Option<f64>,
     /// Whether that period lies before or after the time stamp.
     pub period: Option<Side>,
@@ -131,6 +131,13 @@ pub struct ValueMapping {
     /// Numbers that stand for a missing value.
     #[serde(default)]
     pub missing: Vec<f64>,
+}
+
+impl ValueMapping {
+    /// Whether anything is said of a period.
+    pub fn has_period(&self) -> bool {
+        self.over_min.is_some() || self.period.is_some() || self.since.is_some()
+    }
 }
 
 /// Side of the time stamp on which a period lies.

@@ -157,14 +157,11 @@ impl Feeds {
                 slot = landed;
             }
         }
-        match &slot.good {
-            Some(good) => Ok(self.document(name, good, ask.place)),
-            None => {
-                let trouble = slot.trouble.as_ref().map(|trouble| trouble.reason.clone());
-                let reason = trouble.or_else(|| feed.held(now));
-                Err(no_document(reason.unwrap_or_else(|| "the fetch broke off".into())))
-            }
+        if let Some(good) = &slot.good {
+            return Ok(self.document(name, good, ask.place));
         }
+        let trouble = slot.trouble.as_ref().map(|trouble| trouble.reason.clone());
+        Err(no_document(trouble.or_else(|| feed.held(now)).unwrap_or_else(|| "the fetch broke off".into())))
     }
 
     fn document(&self, name: &str, good: &Good, place: Place) -> Document {
