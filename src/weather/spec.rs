@@ -15,7 +15,8 @@ use super::unit::Unit;
 pub struct FeedSpec {
     /// Name used in queries and answers.
     pub name: String,
-    /// URL template (RFC 6570) with `{lat}` and `{lon}`; `${NAME}` is taken from the environment.
+    /// URL template (RFC 6570) with `{lat}` and `{lon}`, filled in with three decimals so that places within some 100 m
+    /// share a document; `${NAME}` is taken from the environment. `demo:` is the built-in demo.
     pub url: String,
     /// How the document is read.
     pub format: Format,

@@ -137,6 +137,8 @@ impl Inner {
             }
         });
         self.slots.insert((index, ask.key), Arc::clone(&slot)).await;
+        // The cache would put eviction off and meanwhile hold more than it may.
+        self.slots.run_pending_tasks().await;
         let mut ledger = feed.ledger.lock().unwrap_or_else(PoisonError::into_inner);
         match (&ledger_entry, slot.good.as_deref(), &slot.trouble) {
             (Err(fault), _, Some(trouble)) => ledger.failed(fault, trouble, now),
