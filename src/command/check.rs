@@ -1,19 +1,138 @@
-//! `rainward feed check NAME`.
+//! `rainward feed check NAME`: what a feed's document says, before it is trusted.
 
 use std::process::ExitCode;
 
+use chrono::{DateTime, TimeDelta, Utc};
 use clap::Args;
+use rainward::outlook::timeline::{Ask, assumed};
 use rainward::service::App;
+use rainward::service::query::Query;
+use rainward::sky::observer::Observer;
+use rainward::weather::feeds::{CheckQuantity, CheckReport, CheckSpace};
+
+use super::print_problem;
+
+/// Exit code when the document could not be fetched or read.
+const NOT_READ: u8 = 3;
 
 /// Which feed, for which place.
 #[derive(Args)]
 pub struct Arguments {
     /// Name of the feed in the configuration
     name: String,
+    /// A configured site to ask for; without it and without --lat and --lon the first site
+    #[arg(long)]
+    site: Option<String>,
+    /// Latitude, degrees
+    #[arg(long, allow_hyphen_values = true)]
+    lat: Option<String>,
+    /// Longitude, degrees, positive east
+    #[arg(long, allow_hyphen_values = true)]
+    lon: Option<String>,
+    /// Print the report as JSON
+    #[arg(long)]
+    json: bool,
 }
 
 /// Prints what was understood.
-pub async fn run(_app: &App, arguments: Arguments) -> ExitCode {
-    println!("{}", arguments.name);
-    ExitCode::SUCCESS
+pub async fn run(app: &App, arguments: Arguments) -> ExitCode {
+    let json = arguments.json;
+    let mut options = vec![("site", arguments.site), ("lat", arguments.lat), ("lon", arguments.lon)];
+    if options.iter().all(|(_, value)| value.is_none()) {
+        options[0].1 = app.config().sites.first().map(|site| site.name.clone());
+    }
+    let mut query = Query::from_pairs(options.into_iter().filter_map(|(name, value)| Some((name.to_owned(), value?))));
+    let observer = query.observer(app);
+    let observer = match (query.finish(), observer) {
+        (Ok(()), Some(observer)) => observer,
+        (Ok(()), None) => return ExitCode::from(crate::UNUSABLE),
+        (Err(problem), _) => {
+            print_problem(problem);
+            return ExitCode::from(crate::UNUSABLE);
+        }
+    };
+    let report = match app.feeds().check(&arguments.name, observer.place).await {
+        Ok(report) => report,
+        Err(error) => {
+            eprintln!("rainward: {error}");
+            return ExitCode::from(crate::UNUSABLE);
+        }
+    };
+    if json {
+        match serde_json::to_string_pretty(&report) {
+            Ok(text) => println!("{text}"),
+            Err(error) => eprintln!("rainward: {error}"),
+        }
+    } else {
+        print(&report, observer, app.clock().now());
+    }
+    if report.error.is_some() { ExitCode::from(NOT_READ) } else { ExitCode::SUCCESS }
+}
+
+fn print(report: &CheckReport, observer: Observer, now: DateTime<Utc>) {
+    println!("Feed {} at {}", report.feed, report.host);
+    let status = report.status.map_or_else(|| "no answer".into(), |status| format!("HTTP {status}"));
+    let bytes = report.bytes.map_or_else(String::new, |bytes| format!(", {bytes} bytes"));
+    let kind = report.content_type.as_deref().map_or_else(String::new, |kind| format!(", {kind}"));
+    println!("Answer: {}{bytes}{kind}", if report.host.starts_with("demo") { "made here".into() } else { status });
+    if let Some(error) = &report.error {
+        println!("NOT READ: {error}");
+        return;
+    }
+    println!("Issued: {}", report.issued.map_or_else(|| "not given".into(), moment));
+    match &report.space {
+        Some(CheckSpace::Point { lat, lon }) if report.located => println!("Place: {lat}, {lon}"),
+        Some(CheckSpace::Point { lat, lon }) => println!("Place: not given; taken as asked: {lat}, {lon}"),
+        Some(CheckSpace::Grid { south, west, north, east, rows, columns }) => {
+            println!("Grid: {rows} x {columns}, latitude {south} to {north}, longitude {west} to {east}");
+        }
+        None => {}
+    }
+    println!();
+    println!(
+        "{:<15} {:>9} {:>5}  {:<36}  {:>6} {:>7}  {:>9} {:>9}",
+        "value", "read as", "kept", "UTC", "count", "missing", "least", "most"
+    );
+    for quantity in &report.quantities {
+        println!("{}", row(quantity));
+        for gap in &quantity.gaps {
+            if let (Some(start), Some(end)) = (gap.start, gap.end) {
+                println!("{:<15} gap from {} to {}", "", moment(start), moment(end));
+            }
+        }
+    }
+    println!();
+    let absent: Vec<&str> = report.absent.iter().map(|quantity| quantity.name()).collect();
+    println!("Not given: {}", if absent.is_empty() { "nothing".into() } else { absent.join(", ") });
+    for note in &report.notes {
+        println!("Note: {note}");
+    }
+    if let Some(field) = &report.field {
+        let day = TimeDelta::days(1);
+        let ask = Ask { observer, from: now, length: day, step: day, threshold: 0.0, radius_deg: 42.0 };
+        for assumption in assumed(field, &ask) {
+            println!("The outlook will assume: {}", assumption.text);
+        }
+    }
+}
+
+fn row(quantity: &CheckQuantity) -> String {
+    let span = match (quantity.first, quantity.last) {
+        (Some(first), Some(last)) => format!("{} to {}", moment(first), moment(last)),
+        _ => String::new(),
+    };
+    format!(
+        "{:<15} {:>9} {:>5}  {span:<36}  {:>6} {:>7}  {:>9.2} {:>9.2}",
+        quantity.quantity.name(),
+        quantity.unit_read,
+        quantity.unit_kept,
+        quantity.count,
+        quantity.missing,
+        quantity.min,
+        quantity.max
+    )
+}
+
+fn moment(time: DateTime<Utc>) -> String {
+    time.format("%Y-%m-%d %H:%M").to_string()
 }

@@ -139,7 +139,7 @@ fn print(answer: &OutlookAnswer, label: Option<&str>) {
     println!();
     println!("Otherwise: {}.", reasons(steps, answer.threshold));
     for assumption in &answer.outlook.assumed {
-        println!("Assumed: {}: {}", assumption.value.replace('_', " "), assumption.text);
+        println!("Assumed: {}", assumption.text);
     }
     for caution in &answer.outlook.cautions {
         println!("Caution: {caution}");

@@ -26,7 +26,7 @@ pub const UNKNOWN_COVER: f64 = 0.5;
 /// Fall of temperature with height in the standard atmosphere, K/km (ISO 2533:1975).
 const LAPSE_K_PER_KM: f64 = 6.5;
 /// Near-ground temperature below which precipitation is taken as snow, degrees Celsius (common practice: about 1).
-pub const SNOW_BELOW_C: f64 = 1.0;
+const SNOW_BELOW_C: f64 = 1.0;
 
 /// Phase function of the primary at its brightest in rain and of the rain just inside it, both with mean 1 over all
 /// directions: Marshall-Palmer rain under the Sun's disc by Lorenz-Mie theory gives about 0.98 and 0.27 at 450 nm, 1 mm/h

@@ -11,7 +11,7 @@ use crate::weather::quantity::Quantity;
 use super::answer::{
     Assumption, Bearing, CAUTIONS, Limit, Outlook, SkyEvent, SkyEventKind, Step, THUNDER_CAUTION, round,
 };
-use super::chance::{CLOUD_BASE_KM, SNOW_BELOW_C, UNKNOWN_COVER, Weather};
+use super::chance::{CLOUD_BASE_KM, UNKNOWN_COVER, Weather};
 use super::copies::{COUNT, WIDER_WITHOUT_WIND};
 use super::sight::{FARTHEST_KM, Sight, margin_deg};
 use super::windows::windows;
@@ -105,29 +105,33 @@ pub fn assumed(field: &Field, ask: &Ask) -> Vec<Assumption> {
     if !has(Quantity::Rain) {
         say("rain", "no rain in this feed: chance unknown".into());
     }
-    let layers = [Quantity::CloudLow, Quantity::CloudMiddle, Quantity::CloudHigh];
-    if layers.into_iter().any(has) {
-        for layer in layers.into_iter().filter(|&layer| !has(layer)) {
-            say(layer.name(), "taken as clear".into());
+    let layers = [
+        (Quantity::CloudLow, "low cloud"),
+        (Quantity::CloudMiddle, "middle cloud"),
+        (Quantity::CloudHigh, "high cloud"),
+    ];
+    if layers.iter().any(|layer| has(layer.0)) {
+        for (layer, words) in layers.into_iter().filter(|layer| !has(layer.0)) {
+            say(layer.name(), format!("no {words} given: taken as none"));
         }
     } else if has(Quantity::CloudTotal) {
-        say("cloud_low", "no layers given: all cloud taken as low cloud".into());
+        say("cloud_low", "no cloud layers given: all cloud taken as low cloud".into());
     } else {
-        say("cloud_total", format!("taken as {UNKNOWN_COVER} everywhere"));
+        say("cloud_total", format!("no cloud given: cover taken as {UNKNOWN_COVER} everywhere"));
     }
     if !has(Quantity::CloudBase) {
-        say("cloud_base", format!("taken as {CLOUD_BASE_KM} km above the ground"));
+        say("cloud_base", format!("no cloud base given: taken as {CLOUD_BASE_KM} km above the ground"));
     }
     match (has(Quantity::FreezingLevel), has(Quantity::Temperature)) {
         (true, true) => {}
-        (false, true) => say("freezing_level", "from the temperature, 6.5 K/km".into()),
-        (true, false) => say("temperature", "snow only where the freezing level lies on the ground".into()),
-        (false, false) => {
-            say("temperature", format!("taken as above {SNOW_BELOW_C} Cel: everything that falls is rain"));
+        (false, true) => say("freezing_level", "no freezing level given: taken from the temperature, 6.5 K/km".into()),
+        (true, false) => {
+            say("temperature", "no temperature given: snow only where the freezing level lies on the ground".into());
         }
+        (false, false) => say("temperature", "no temperature given: all that falls is taken as rain".into()),
     }
     if !has(Quantity::Visibility) {
-        say("visibility", format!("taken as {FARTHEST_KM} km"));
+        say("visibility", format!("no visibility given: taken as {FARTHEST_KM} km"));
     }
     if matches!(field.space, Space::Point(_)) {
         let pair = |a, b| has(a) && has(b);
@@ -137,15 +141,18 @@ pub fn assumed(field: &Field, ask: &Ask) -> Vec<Assumption> {
             say(
                 "wind",
                 format!(
-                    "one point without wind: the same weather all round, errors taken {WIDER_WITHOUT_WIND} times wider"
+                    "one point without wind: the same weather taken all round, its error {WIDER_WITHOUT_WIND} times wider"
                 ),
             );
         }
     }
     if field.issued.is_none() {
-        say("issued", "not given: the forecast's error grows from the time it was fetched".into());
+        say("issued", "no time of issue given: the forecast's error grows from the time it was fetched".into());
     }
-    say("copies", format!("{COUNT} displaced within an assumed forecast error, growing with lead time"));
+    say(
+        "copies",
+        format!("{COUNT} copies of the forecast, displaced within an assumed error that grows with lead time"),
+    );
     list
 }
 

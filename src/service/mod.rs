@@ -29,7 +29,8 @@ use tokio::sync::Semaphore;
 
 use crate::clock::Clock;
 use crate::config::Config;
-use crate::weather::feeds::{Feeds, SetupError};
+use crate::demo;
+use crate::weather::feeds::{Feeds, Options, SetupError};
 
 /// Longest time for a client to send its request head.
 const HEAD_TIME: Duration = Duration::from_secs(10);
@@ -56,7 +57,12 @@ impl App {
     /// # Errors
     /// Every [`SetupError`] of the feeds.
     pub fn new(config: Config, clock: Clock) -> Result<Self, Vec<SetupError>> {
-        let feeds = Feeds::new(&config.feeds, clock.clone())?;
+        let options = Options {
+            demo: Some(Arc::new(demo::document)),
+            memory_bytes: config.limits.documents_mb * 1_000_000,
+            ..Options::default()
+        };
+        let feeds = Feeds::with_options(&config.feeds, clock.clone(), options)?;
         let answers = outlook::Answers::new(config.limits.answers_mb * 1_000_000);
         Ok(Self(Arc::new(Inner { config, feeds, clock, answers, stopping: AtomicBool::new(false) })))
     }

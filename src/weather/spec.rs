@@ -15,7 +15,8 @@ use super::unit::Unit;
 pub struct FeedSpec {
     /// Name used in queries and answers.
     pub name: String,
-    /// URL template (RFC 6570) with `{lat}` and `{lon}`; `${NAME}` is taken from the environment.
+    /// URL template (RFC 6570) with `{lat}` and `{lon}`, filled in with three decimals so that places within some 100 m
+    /// share a document; `${NAME}` is taken from the environment. `demo:` is the built-in demo.
     pub url: String,
     /// How the document is read.
     pub format: Format,
@@ -121,7 +122,7 @@ pub struct ValueMapping {
     pub at: String,
     /// Unit of the number (UCUM).
     pub unit: Unit,
-    /// Period over which an amount was gathered, minutes.
+    /// Period over which an amount of rain was gathered or its rate averaged, minutes.
     pub over_min: Option<f64>,
     /// Whether that period lies before or after the time stamp.
     pub period: Option<Side>,
@@ -131,6 +132,13 @@ pub struct ValueMapping {
     /// Numbers that stand for a missing value.
     #[serde(default)]
     pub missing: Vec<f64>,
+}
+
+impl ValueMapping {
+    /// Whether anything is said of a period.
+    pub fn has_period(&self) -> bool {
+        self.over_min.is_some() || self.period.is_some() || self.since.is_some()
+    }
 }
 
 /// Side of the time stamp on which a period lies.

@@ -1,4 +1,4 @@
-//! What the computations are held against: figures from outside, kept in `tests/reference` with their sources.
+//! What the library promises, shown through its public doors: against sources, over random input, over real sockets.
 
 #![allow(
     clippy::expect_used,
@@ -6,9 +6,15 @@
     clippy::print_stdout,
     clippy::unwrap_used,
     missing_docs,
-    reason = "tests fail by panicking and tell how close they came"
+    reason = "a test fails by panicking and tells how close it came or what it skips"
 )]
 
+mod feeds_care;
+mod feeds_coverages;
+mod feeds_documents;
+mod feeds_faults;
+mod feeds_random;
+mod misbehaving;
 mod properties_sky;
 mod reference_optics;
 mod reference_sky;

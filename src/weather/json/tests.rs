@@ -55,6 +55,10 @@ fn overlapping_periods_are_refused_and_periods_may_be_told_by_the_document() {
     let field = read_text(document, &with(r#"{"at": "/r", "unit": "mm", "since": "/b"}"#)).unwrap();
     assert_eq!(field.series(Quantity::Rain).unwrap().values, [1.0, 2.0, 1.0]);
     assert_eq!(field.series(Quantity::Rain).unwrap().times, Times::Periods(vec![0..3600, 3600..7200, 7200..28800]));
+    let means =
+        read_text(document, &with(r#"{"at": "/r", "unit": "mm/h", "over_min": 60, "period": "before"}"#)).unwrap();
+    assert_eq!(means.series(Quantity::Rain).unwrap().values, [1.0, 2.0, 6.0]);
+    assert_eq!(means.series(Quantity::Rain).unwrap().times.gaps(), [(7200, 25200)]);
 }
 
 #[test]
@@ -144,6 +148,10 @@ fn pointers_that_match_nothing_and_units_that_cannot_be_right_are_named() {
         (
             r#""rain": {"at": "/v", "unit": "mm"}"#,
             "mapping values.rain: an amount in mm needs over_min and period, or since",
+        ),
+        (
+            r#""temperature": {"at": "/v", "unit": "K", "over_min": 60, "period": "before"}"#,
+            "mapping values.temperature: over_min, period and since are for rain alone",
         ),
         (
             r#""temperature": {"at": "v", "unit": "K"}"#,

@@ -40,9 +40,9 @@ pub fn read(bytes: &[u8], mapping: &JsonMapping, asked: Place) -> Result<Field, 
     for (&quantity, value) in &mapping.values {
         let column = steps.column(&value.at, times.len(), &mapping.time)?;
         let mut intake = Intake::new(quantity, value.unit, &value.at)?;
-        let series = if intake.is_amount() {
+        let series = if value.has_period() {
             let periods = steps.periods(value, &times, &stamp)?;
-            amounts(&mut intake, &column, value, &periods, &order, quantity)?
+            rates(&mut intake, &column, value, &periods, &order, quantity)?
         } else {
             let values = order.iter().map(|&step| take(&mut intake, column[step], value, 1.0)).collect();
             Series { times: Times::Instants(order.iter().map(|&step| times[step]).collect()), values }
@@ -84,7 +84,11 @@ pub fn faults(mapping: &JsonMapping) -> Vec<(String, String)> {
         }
         match value.unit.conversion(*quantity) {
             Err(wrong) => fault(".unit", wrong.to_string()),
-            Ok(by) if by.amount => match (&value.since, value.over_min, value.period) {
+            Ok(_) if value.has_period() && *quantity != Quantity::Rain => {
+                fault("", "over_min, period and since are for rain alone".into());
+            }
+            Ok(by) if !(value.has_period() || by.amount) => {}
+            Ok(by) => match (&value.since, value.over_min, value.period) {
                 (Some(_), None, None) if mapping.steps.is_some() => {}
                 (Some(_), None, None) => fault(".since", "needs a list of steps".into()),
                 (None, Some(over_min), Some(_)) => {
@@ -92,12 +96,11 @@ pub fn faults(mapping: &JsonMapping) -> Vec<(String, String)> {
                         fault(".over_min", bound.to_string());
                     }
                 }
-                _ => fault("", format!("an amount in {} needs over_min and period, or since", value.unit.code())),
+                _ => {
+                    let kind = if by.amount { "an amount" } else { "a mean rate" };
+                    fault("", format!("{kind} in {} needs over_min and period, or since", value.unit.code()));
+                }
             },
-            Ok(_) if value.over_min.is_some() || value.period.is_some() || value.since.is_some() => {
-                fault("", format!("{} is no amount: over_min, period and since do not apply", value.unit.code()));
-            }
-            Ok(_) => {}
         }
     }
     faults
@@ -196,9 +199,9 @@ impl<'a> Steps<'a> {
     }
 }
 
-/// Amounts as mean rates over their periods. Steps without a value have no period, so that a feed may leave the value
+/// Amounts and mean rates of rain over their periods. Steps without a value have no period, so that a feed may leave the value
 /// out where another length of period takes over.
-fn amounts(
+fn rates(
     intake: &mut Intake,
     column: &[Option<&Value>],
     value: &ValueMapping,
@@ -208,7 +211,8 @@ fn amounts(
 ) -> Result<Series, ReadError> {
     let (mut kept, mut values) = (Vec::new(), Vec::new());
     for &step in order {
-        let over_h = (periods[step].end - periods[step].start) as f64 / 3600.0;
+        let hours = (periods[step].end - periods[step].start) as f64 / 3600.0;
+        let over_h = if intake.is_amount() { hours } else { 1.0 };
         let rate = take(intake, column[step], value, over_h);
         if !rate.is_nan() {
             kept.push(periods[step].clone());
