@@ -8,7 +8,7 @@ use crate::weather::quantity::Quantity;
 
 use super::answer::Limit;
 use super::copies::{COUNT, Copy, Spread, copies};
-use super::scene::{Instant, Scene};
+use super::scene::{Look, Scene, Wind};
 use super::sight::{DIRECTIONS, FARTHEST_KM, PIECES, Piece, Ray, Sight};
 
 /// Contrast from which a bow counts as seen (the threshold of visual range, Koschmieder 1924).
@@ -124,8 +124,8 @@ impl<'a> Weather<'a> {
         let mut sum = Sum::default();
         for copy in &self.copies {
             let shift_km = (spread.place_km * copy.east, spread.place_km * copy.north);
-            let instant = self.scene.at(time_s - (spread.time_s * copy.delay) as i64, wind);
-            sum.add(&self.walk(&rays, &instant, shift_km, copy.rank, &shade));
+            let sky = self.sky(time_s - (spread.time_s * copy.delay) as i64, wind);
+            sum.add(&walk(&rays, &sky, shift_km, copy.rank, &shade));
         }
         sum.verdict()
     }
@@ -146,63 +146,78 @@ impl<'a> Weather<'a> {
         }
     }
 
-    /// Walks out along the rays through one copy.
-    fn walk(
-        &self,
-        rays: &[Option<(Ray, [Piece; PIECES])>; DIRECTIONS],
-        instant: &Instant<'_>,
-        shift_km: (f64, f64),
-        rank: f32,
-        shade: &Shade,
-    ) -> Outcome {
-        let mut outcome = Outcome::default();
-        let mut dark = [1.0_f64; DIRECTIONS];
-        for (ray, pieces) in rays.iter().flatten() {
-            let (mut depth, mut seen, mut lit) = (0.0_f64, 0.0, 0.0);
-            for piece in pieces {
-                let (east_km, north_km) =
-                    (piece.range_km * ray.east - shift_km.0, piece.range_km * ray.north - shift_km.1);
-                let rain = instant.value(self.rain, east_km, north_km);
-                if rain.is_nan() {
-                    continue;
-                }
-                outcome.known = true;
-                if rain < TRACE_MM_H || self.is_dry(instant, east_km, north_km, rank) {
-                    continue;
-                }
-                outcome.rain = true;
-                let piece_depth = rain_extinction_per_km(f64::from(rain)) * piece.length_km;
-                let share = 0.5 * (-2.0 * depth).exp() * (1.0 - (-2.0 * piece_depth).exp());
-                depth += piece_depth;
-                seen += share;
-                lit += share * self.lit(instant, east_km, north_km, piece.range_km * ray.up, shade);
-            }
-            let contrast = contrast(seen);
-            if contrast >= CONTRAST_THRESHOLD {
-                outcome.contrast = outcome.contrast.max(contrast);
-                dark[ray.sector] = dark[ray.sector].min(1.0 - lit / seen);
-            }
+    /// Everything a walk looks at, at an instant.
+    fn sky(&self, time_s: i64, wind: Option<Wind>) -> Sky<'_> {
+        let look = |series| self.scene.look(series, time_s, wind);
+        Sky {
+            rain: look(self.rain),
+            rain_chance: self.rain_chance.map(look),
+            clouds: self.clouds.map(|layer| layer.map(|(series, height_km)| (look(series), height_km))),
         }
-        outcome.chance = 1.0 - dark.iter().product::<f64>();
-        outcome
     }
+}
 
-    fn is_dry(&self, instant: &Instant<'_>, east_km: f64, north_km: f64, rank: f32) -> bool {
-        self.rain_chance.is_some_and(|series| instant.value(series, east_km, north_km) <= rank)
+/// Rain and clouds of one copy at an instant.
+struct Sky<'a> {
+    rain: Look<'a>,
+    rain_chance: Option<Look<'a>>,
+    clouds: [Option<(Look<'a>, Option<f64>)>; 3],
+}
+
+/// Walks out along the rays through one copy.
+fn walk(
+    rays: &[Option<(Ray, [Piece; PIECES])>; DIRECTIONS],
+    sky: &Sky<'_>,
+    shift_km: (f64, f64),
+    rank: f32,
+    shade: &Shade,
+) -> Outcome {
+    let mut outcome = Outcome::default();
+    let mut dark = [1.0_f64; DIRECTIONS];
+    for (ray, pieces) in rays.iter().flatten() {
+        let (mut passed, mut seen, mut lit) = (1.0_f64, 0.0, 0.0);
+        for piece in pieces {
+            let east_km = piece.range_km * ray.east - shift_km.0;
+            let north_km = piece.range_km * ray.north - shift_km.1;
+            let rain = sky.rain.value(east_km, north_km);
+            outcome.known |= !rain.is_nan();
+            if rain.is_nan() || rain < TRACE_MM_H || sky.is_dry(east_km, north_km, rank) {
+                continue;
+            }
+            outcome.rain = true;
+            let passes = (-2.0 * rain_extinction_per_km(f64::from(rain)) * piece.length_km).exp();
+            let share = 0.5 * passed * (1.0 - passes);
+            passed *= passes;
+            seen += share;
+            lit += share * sky.lit(east_km, north_km, piece.range_km * ray.up, shade);
+        }
+        let contrast = contrast(seen);
+        if contrast >= CONTRAST_THRESHOLD {
+            outcome.contrast = outcome.contrast.max(contrast);
+            dark[ray.sector] = dark[ray.sector].min(1.0 - lit / seen);
+        }
+    }
+    outcome.chance = 1.0 - dark.iter().product::<f64>();
+    outcome
+}
+
+impl Sky<'_> {
+    fn is_dry(&self, east_km: f64, north_km: f64, rank: f32) -> bool {
+        self.rain_chance.is_some_and(|look| look.value(east_km, north_km) <= rank)
     }
 
     /// Probability that sunlight reaches a point: each cloud layer is crossed toward the Sun, its cover there is the
     /// probability of shade. Where the field does not reach that far, the cover over the point itself is taken.
-    fn lit(&self, instant: &Instant<'_>, east_km: f64, north_km: f64, height_km: f64, shade: &Shade) -> f64 {
-        if self.clouds[0].is_none() && self.clouds[1].is_none() && self.clouds[2].is_none() {
+    fn lit(&self, east_km: f64, north_km: f64, height_km: f64, shade: &Shade) -> f64 {
+        if self.clouds.iter().all(Option::is_none) {
             return 1.0 - UNKNOWN_COVER;
         }
         let mut lit = 1.0;
-        for (series, layer_km) in self.clouds.iter().flatten() {
+        for (look, layer_km) in self.clouds.iter().flatten() {
             let layer_km = layer_km.unwrap_or(shade.cloud_base_km);
             let Some(away_km) = shade.crossing_km(layer_km - height_km) else { continue };
-            let there = instant.value(series, east_km + away_km * shade.sun_east, north_km + away_km * shade.sun_north);
-            let cover = if there.is_nan() { instant.value(series, east_km, north_km) } else { there };
+            let there = look.value(east_km + away_km * shade.sun_east, north_km + away_km * shade.sun_north);
+            let cover = if there.is_nan() { look.value(east_km, north_km) } else { there };
             lit *= if cover.is_nan() { 1.0 - UNKNOWN_COVER } else { 1.0 - f64::from(cover) };
         }
         lit

@@ -67,19 +67,21 @@ impl Sight {
 /// the exact ends of windows.
 pub fn margin_deg(observer: &Observer, radius_deg: f64, time: DateTime<Utc>) -> f64 {
     let sun = Sun::at(observer, time);
-    let reach = Circle::new(sun.antisolar_point(), radius_deg).reach_deg(&observer.horizon);
-    sun.over_horizon_deg(observer).min(reach)
+    let clear_deg = sun.over_horizon_deg(observer);
+    if clear_deg < 0.0 {
+        return clear_deg;
+    }
+    clear_deg.min(Circle::new(sun.antisolar_point(), radius_deg).reach_deg(&observer.horizon))
 }
 
 /// What geometry alone forbids.
 pub fn limit(observer: &Observer, sun: &Sun, circle: &Circle, arc: &Arc) -> Option<Limit> {
-    let level = Horizon::Level(-observer.dip_deg);
     if sun.over_horizon_deg(observer) < 0.0 {
-        let over_level = Observer { horizon: level, ..observer.clone() };
-        return Some(if sun.over_horizon_deg(&over_level) < 0.0 { Limit::SunDown } else { Limit::Skyline });
+        return Some(if sun.over_deg(-observer.dip_deg) < 0.0 { Limit::SunDown } else { Limit::Skyline });
     }
     if arc.runs.is_empty() {
-        return Some(if circle.reach_deg(&level) < 0.0 { Limit::SunTooHigh } else { Limit::Skyline });
+        let over_level_deg = circle.reach_deg(&Horizon::Level(-observer.dip_deg));
+        return Some(if over_level_deg < 0.0 { Limit::SunTooHigh } else { Limit::Skyline });
     }
     None
 }

@@ -3,14 +3,14 @@
 use std::f64::consts::{PI, TAU};
 
 use super::direction::Direction;
-use super::horizon::{Horizon, Skyline};
+use super::horizon::Horizon;
 
-/// Points by which a circle is sampled before crossings with a skyline are narrowed: 1 degree each.
-const SAMPLES: usize = 360;
+/// Points by which a whole circle would be sampled before crossings with a skyline are narrowed: 2 degrees each.
+const SAMPLES: usize = 180;
 
 /// Same-signed neighbours nearer to the skyline than this may hide two crossings between them, degrees: more than a
 /// circle can bulge over a straight skyline within one sample.
-const BULGE_DEG: f64 = 0.02;
+const BULGE_DEG: f64 = 0.05;
 
 /// A circle on the sky. A point on it is named by its angle from the top, in radians, growing to the right as seen
 /// facing the centre.
@@ -65,53 +65,62 @@ impl Circle {
     pub fn over(&self, horizon: &Horizon) -> Arc {
         let runs = match horizon {
             Horizon::Level(limit_deg) => self.over_level(*limit_deg),
-            Horizon::Skyline(skyline) => self.over_skyline(horizon, skyline),
+            Horizon::Skyline(_) => self.over_skyline(horizon),
         };
         self.arc(runs)
     }
 
-    /// By how many degrees the circle reaches over the horizon at its best point; negative where all of it is hidden.
+    /// By how many degrees the circle reaches over the horizon; negative where all of it is hidden. Its sign and its value
+    /// near zero are those of the best point; where the top clears the whole skyline it is how far the top does.
     pub fn reach_deg(&self, horizon: &Horizon) -> f64 {
-        match horizon {
-            Horizon::Level(limit_deg) => self.point(0.0).elevation_deg() - limit_deg,
-            Horizon::Skyline(skyline) => {
-                let best = self
-                    .sample_angles(horizon)
-                    .into_iter()
-                    .map(|angle| (angle, self.clearance_deg(skyline, angle)))
-                    .max_by(|a, b| a.1.total_cmp(&b.1))
-                    .map_or(0.0, |best| best.0);
-                let width = TAU / SAMPLES as f64;
-                self.clearance_deg(skyline, self.turning_point(skyline, best - width, best + width, 1.0))
-            }
+        let top_deg = self.point(0.0).elevation_deg();
+        let (lowest_deg, highest_deg) = horizon.extent_deg();
+        if top_deg - highest_deg > BULGE_DEG || lowest_deg == highest_deg {
+            return top_deg - highest_deg;
         }
+        let width = TAU / SAMPLES as f64;
+        let best = self
+            .sample_angles(horizon, 0.0, PI)
+            .into_iter()
+            .map(|angle| (angle, self.clearance_deg(horizon, angle)))
+            .max_by(|a, b| a.1.total_cmp(&b.1))
+            .map_or(0.0, |best| best.0);
+        self.clearance_deg(horizon, self.turning_point(horizon, best - width, best + width, 1.0))
     }
 
-    /// sin(elevation) = sin a cos r + cos a sin r cos(angle): the half width over a level limit is a closed form.
-    fn over_level(&self, limit_deg: f64) -> Vec<(f64, f64)> {
+    /// Half the width, as an angle on the circle, over which it stands above an elevation: sin(elevation) = sin a cos r +
+    /// cos a sin r cos(angle), solved for the angle. 0 where it does nowhere, pi where it does all round.
+    fn half_width(&self, limit_deg: f64) -> f64 {
         let across = self.top.up * self.sin_radius;
         let above = self.centre.up * self.cos_radius - limit_deg.to_radians().sin();
         if above >= across.abs() {
-            return vec![(-PI, PI)];
+            PI
+        } else if above <= -across.abs() {
+            0.0
+        } else {
+            (-above / across).acos()
         }
-        if above <= -across.abs() {
-            return Vec::new();
-        }
-        let half = (-above / across).acos();
-        vec![(-half, half)]
     }
 
-    fn clearance_deg(&self, skyline: &Skyline, angle: f64) -> f64 {
+    fn over_level(&self, limit_deg: f64) -> Vec<(f64, f64)> {
+        let half = self.half_width(limit_deg);
+        if half > 0.0 { vec![(-half, half)] } else { Vec::new() }
+    }
+
+    fn clearance_deg(&self, horizon: &Horizon, angle: f64) -> f64 {
         let point = self.point(angle);
-        point.elevation_deg() - skyline.elevation_deg(point.azimuth_deg())
+        point.elevation_deg() - horizon.elevation_deg(point.azimuth_deg())
     }
 
-    /// Even samples and the places where the circle passes over a corner of the skyline: between two of them the skyline
-    /// is one straight line.
-    fn sample_angles(&self, horizon: &Horizon) -> Vec<f64> {
-        let mut angles: Vec<f64> = (0..SAMPLES).map(|index| -PI + TAU * index as f64 / SAMPLES as f64).collect();
+    /// Even samples at angles from `near` to `far` on both sides of the top, and the places there where the circle passes
+    /// over a corner of the skyline: between two of them the skyline is one straight line.
+    fn sample_angles(&self, horizon: &Horizon, near: f64, far: f64) -> Vec<f64> {
+        let count = ((far - near) / TAU * SAMPLES as f64).ceil().max(1.0) as usize;
+        let right = (0..=count).map(|index| near + (far - near) * index as f64 / count as f64);
+        let mut angles: Vec<f64> = right.flat_map(|angle| [-angle, angle]).collect();
         for &(azimuth_deg, _) in horizon.points() {
-            angles.extend(self.angles_at_azimuth(azimuth_deg).into_iter().flatten());
+            let corners = self.angles_at_azimuth(azimuth_deg).into_iter().flatten();
+            angles.extend(corners.filter(|angle| (near..=far).contains(&angle.abs())));
         }
         angles.sort_by(f64::total_cmp);
         angles
@@ -134,65 +143,69 @@ impl Circle {
         })
     }
 
-    fn over_skyline(&self, horizon: &Horizon, skyline: &Skyline) -> Vec<(f64, f64)> {
-        let angles = self.sample_angles(horizon);
+    /// Above the highest point of the skyline all is visible, below its lowest nothing: only the angles in between are
+    /// sampled.
+    fn over_skyline(&self, horizon: &Horizon) -> Vec<(f64, f64)> {
         let (lowest_deg, highest_deg) = horizon.extent_deg();
-        let (surely_hidden, surely_visible) = (lowest_deg.to_radians().sin(), highest_deg.to_radians().sin());
-        let margin = BULGE_DEG.to_radians();
-        let clearance = |angle: f64| {
-            let up = self.point(angle).up;
-            if up > surely_visible + margin {
-                1.0
-            } else if up < surely_hidden - margin {
-                -1.0
-            } else {
-                self.clearance_deg(skyline, angle)
-            }
-        };
+        let near = self.half_width((highest_deg + 2.0 * BULGE_DEG).min(90.0));
+        let far = self.half_width((lowest_deg - 2.0 * BULGE_DEG).max(-90.0));
+        let angles = self.sample_angles(horizon, near, far);
+        let sampled = angles.into_iter().map(|angle| (angle, self.clearance_deg(horizon, angle)));
         let mut edges = Vec::new();
-        let mut before = (angles[0], clearance(angles[0]));
-        let first = before;
-        let closing = std::iter::once(angles[0] + TAU);
-        for angle in angles.iter().skip(1).copied().chain(closing) {
-            let after = (angle, if angle > PI { first.1 } else { clearance(angle) });
-            self.edges_between(skyline, before, after, &mut edges);
-            before = after;
+        let mut first = None;
+        let mut before: Option<(f64, f64)> = None;
+        for sample in sampled {
+            if let Some(before) = before {
+                self.edges_between(horizon, before, sample, &mut edges);
+            }
+            first = first.or(Some(sample));
+            before = Some(sample);
         }
+        // From the last sample through the lowest point to the first there is nothing left to cross, unless all is sampled.
+        let (Some(first), Some(last)) = (first, before) else { return Vec::new() };
+        self.edges_between(horizon, last, (first.0 + TAU, first.1), &mut edges);
         pieces(&edges, first.1 >= 0.0)
     }
 
-    fn edges_between(&self, skyline: &Skyline, a: (f64, f64), b: (f64, f64), edges: &mut Vec<f64>) {
+    fn edges_between(&self, horizon: &Horizon, a: (f64, f64), b: (f64, f64), edges: &mut Vec<f64>) {
         if (a.1 >= 0.0) != (b.1 >= 0.0) {
-            edges.push(self.edge(skyline, a.0, b.0, a.1 >= 0.0));
+            edges.push(self.edge(horizon, a, b));
         } else if a.1.abs().min(b.1.abs()) < BULGE_DEG {
             let sign = if a.1 >= 0.0 { -1.0 } else { 1.0 };
-            let turn = self.turning_point(skyline, a.0, b.0, sign);
-            if (self.clearance_deg(skyline, turn) >= 0.0) != (a.1 >= 0.0) {
-                edges.push(self.edge(skyline, a.0, turn, a.1 >= 0.0));
-                edges.push(self.edge(skyline, turn, b.0, a.1 < 0.0));
+            let angle = self.turning_point(horizon, a.0, b.0, sign);
+            let turn = (angle, self.clearance_deg(horizon, angle));
+            if (turn.1 >= 0.0) != (a.1 >= 0.0) {
+                edges.push(self.edge(horizon, a, turn));
+                edges.push(self.edge(horizon, turn, b));
             }
         }
     }
 
-    /// Narrows a crossing by halving to 1e-9 of a turn.
-    fn edge(&self, skyline: &Skyline, mut low: f64, mut high: f64, visible_at_low: bool) -> f64 {
-        while high - low > 1e-9 {
-            let middle = 0.5 * (low + high);
-            if (self.clearance_deg(skyline, middle) >= 0.0) == visible_at_low {
-                low = middle;
-            } else {
-                high = middle;
+    /// Narrows a crossing between two samples of opposite sign to 1e-9 radians: regula falsi with the Illinois change
+    /// (Dowell and Jarratt 1971, BIT 11, 168-174).
+    fn edge(&self, horizon: &Horizon, mut a: (f64, f64), mut b: (f64, f64)) -> f64 {
+        for _ in 0..60 {
+            if b.0 - a.0 < 1e-9 || a.1 == b.1 {
+                break;
+            }
+            let angle = b.0 - b.1 * (b.0 - a.0) / (b.1 - a.1);
+            let clearance = self.clearance_deg(horizon, angle);
+            let (near, far) = if (clearance >= 0.0) == (a.1 >= 0.0) { (&mut a, &mut b) } else { (&mut b, &mut a) };
+            far.1 *= 0.5;
+            *near = (angle, clearance);
+            if clearance.abs() < 1e-9 {
+                return angle;
             }
         }
-        0.5 * (low + high)
+        0.5 * (a.0 + b.0)
     }
 
     /// Where `sign` times the clearance is greatest between two angles, by thirds.
-    fn turning_point(&self, skyline: &Skyline, mut low: f64, mut high: f64, sign: f64) -> f64 {
+    fn turning_point(&self, horizon: &Horizon, mut low: f64, mut high: f64, sign: f64) -> f64 {
         while high - low > 1e-6 {
             let third = (high - low) / 3.0;
             let (left, right) = (low + third, high - third);
-            if sign * self.clearance_deg(skyline, left) < sign * self.clearance_deg(skyline, right) {
+            if sign * self.clearance_deg(horizon, left) < sign * self.clearance_deg(horizon, right) {
                 low = left;
             } else {
                 high = right;

@@ -46,10 +46,15 @@ impl Sun {
     /// 34 arcmin. Over a skyline the refraction is that of the skyline's elevation, and the sea horizon still hides the
     /// Sun where the skyline lies below it.
     pub fn over_horizon_deg(&self, observer: &Observer) -> f64 {
-        let elevation_deg = self.airless.elevation_deg();
-        let lifted = elevation_deg + refraction_deg(elevation_deg, Air::STANDARD).min(HORIZON_REFRACTION_DEG);
         let lowest = observer.horizon.elevation_deg(self.airless.azimuth_deg()).max(-observer.dip_deg);
-        lifted + SEMIDIAMETER_DEG - lowest
+        self.over_deg(lowest)
+    }
+
+    /// By how many degrees the Sun's upper limb stands over an elevation, by the same convention.
+    pub fn over_deg(&self, elevation_deg: f64) -> f64 {
+        let airless_deg = self.airless.elevation_deg();
+        let lifted = airless_deg + refraction_deg(airless_deg, Air::STANDARD).min(HORIZON_REFRACTION_DEG);
+        lifted + SEMIDIAMETER_DEG - elevation_deg
     }
 }
 

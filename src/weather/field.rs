@@ -8,12 +8,13 @@ use thiserror::Error;
 
 use super::quantity::{Dimension, Quantity};
 use crate::bounds::Place;
+use crate::sky::horizon::EARTH_RADIUS_M;
 
-/// Mean radius of the Earth, km (IUGG).
-const EARTH_KM: f64 = 6371.0088;
+/// Mean radius of the Earth, km.
+const EARTH_KM: f64 = EARTH_RADIUS_M / 1000.0;
 
 /// Length of a degree of a great circle, km.
-const KM_PER_DEG: f64 = EARTH_KM * std::f64::consts::PI / 180.0;
+pub const KM_PER_DEG: f64 = EARTH_KM * std::f64::consts::PI / 180.0;
 
 /// How far from its place the series of one point still speaks for the weather, km.
 pub const POINT_REACH_KM: f64 = 50.0;
