@@ -17,6 +17,8 @@ const WIND_KM_H: (f64, f64) = (26.0, 12.0);
 /// Spacing of the lattice on which showers are seeded, km, and the time each lattice of showers lives, h.
 const SPACING_KM: f64 = 22.0;
 const LIFE_H: f64 = 3.0;
+/// Rain below this is none, mm/h.
+const LEAST_RAIN: f64 = 0.05;
 
 /// A CoverageJSON document of the demo weather from an hour before a time to two days and a half after it.
 pub fn document(now: DateTime<Utc>) -> Vec<u8> {
@@ -29,9 +31,11 @@ pub fn document(now: DateTime<Utc>) -> Vec<u8> {
     let mut grids: [Vec<f32>; 3] = std::array::from_fn(|_| Vec::with_capacity(times.len() * cells.len()));
     for time in &times {
         let hour = time.timestamp() as f64 / 3600.0;
+        let showers = showers(hour);
         for &(east_km, north_km) in &cells {
-            let rain = showers(east_km, north_km, hour, 1.0);
-            let cloud = 12.0 + 30.0 * showers(east_km, north_km, hour, 1.7);
+            let fall = |wider| showers.iter().map(|shower| shower.at(east_km, north_km, wider)).sum::<f64>();
+            let rain = Some(fall(1.0)).filter(|rain| *rain >= LEAST_RAIN).unwrap_or(0.0);
+            let cloud = 12.0 + 30.0 * fall(1.7);
             let warmth = 11.0 + 3.0 * ((hour - 17.0) / 24.0 * std::f64::consts::TAU).cos() - 0.4 * rain;
             for (grid, value) in grids.iter_mut().zip([rain, cloud.min(100.0), warmth]) {
                 grid.push(((value * 100.0).round() / 100.0) as f32);
@@ -111,29 +115,48 @@ fn km(row: usize, column: usize) -> (f64, f64) {
     ((lon - LON.0) * 111.2 * LAT.0.to_radians().cos(), (lat - LAT.0) * 111.2)
 }
 
-/// Sum of the showers round a point in the frame that drifts with the wind, mm/h; `wider` stretches them.
-fn showers(east_km: f64, north_km: f64, hour: f64, wider: f64) -> f64 {
-    let (x, y) = (east_km - WIND_KM_H.0 * hour, north_km - WIND_KM_H.1 * hour);
-    let (column, row) = ((x / SPACING_KM).floor() as i64, (y / SPACING_KM).floor() as i64);
+/// A shower at a moment.
+struct Shower {
+    east_km: f64,
+    north_km: f64,
+    radius_km: f64,
+    peak_mm_h: f64,
+}
+
+impl Shower {
+    /// Its rain at a place, mm/h; `wider` stretches it.
+    fn at(&self, east_km: f64, north_km: f64, wider: f64) -> f64 {
+        let (east, north, radius) = (self.east_km - east_km, self.north_km - north_km, self.radius_km * wider);
+        let square = (east * east + north * north) / (2.0 * radius * radius);
+        if square > 12.0 { 0.0 } else { self.peak_mm_h * (-square).exp() }
+    }
+}
+
+/// The showers over the coast at an hour since 1970: seeded on a lattice that drifts with the wind, they grow and fade.
+fn showers(hour: f64) -> Vec<Shower> {
+    let (drift_east, drift_north) = (WIND_KM_H.0 * hour, WIND_KM_H.1 * hour);
+    let (width, height) = km(LAT.2 - 1, LON.2 - 1);
+    let lattice = |from: f64, to: f64| (from / SPACING_KM).floor() as i64 - 1..=(to / SPACING_KM).floor() as i64 + 1;
     let generation = (hour / LIFE_H).floor() as i64;
-    let mut sum = 0.0;
+    let mut found = Vec::new();
     for born in [generation - 1, generation] {
         let age = (hour / LIFE_H - born as f64) / 2.0;
         let vigour = (std::f64::consts::PI * age).sin().powi(2);
-        for i in column - 1..=column + 1 {
-            for j in row - 1..=row + 1 {
+        for i in lattice(-drift_east, width - drift_east) {
+            for j in lattice(-drift_north, height - drift_north) {
                 let [present, dx, dy, size, strength] = dice(i, j, born);
                 if present < spell(born) {
-                    let (east, north) = ((i as f64 + dx) * SPACING_KM - x, (j as f64 + dy) * SPACING_KM - y);
-                    let radius = (2.5 + 3.5 * size) * wider;
-                    sum += vigour
-                        * (0.5 + 5.0 * strength)
-                        * (-(east * east + north * north) / (2.0 * radius * radius)).exp();
+                    found.push(Shower {
+                        east_km: (i as f64 + dx) * SPACING_KM + drift_east,
+                        north_km: (j as f64 + dy) * SPACING_KM + drift_north,
+                        radius_km: 2.5 + 3.5 * size,
+                        peak_mm_h: vigour * (0.5 + 5.0 * strength),
+                    });
                 }
             }
         }
     }
-    if sum < 0.05 { 0.0 } else { sum }
+    found
 }
 
 /// Share of the lattice that holds a shower: showery spells follow dry ones about every half day.

@@ -149,8 +149,8 @@ impl EvenAxis {
             return None;
         }
         let at = at.clamp(0.0, self.last);
-        let before = at.floor().min(self.last - 1.0);
-        Some((before as usize, (at - before) as f32))
+        let before = (at as usize).min(self.last as usize - 1);
+        Some((before, (at - before as f64) as f32))
     }
 }
 

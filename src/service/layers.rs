@@ -3,9 +3,10 @@
 
 use std::time::Duration;
 
+use axum::body::Body;
 use axum::error_handling::HandleErrorLayer;
 use axum::extract::DefaultBodyLimit;
-use axum::http::{HeaderName, HeaderValue, Request, header};
+use axum::http::{HeaderName, HeaderValue, Request, StatusCode, header};
 use axum::response::{IntoResponse, Response};
 use axum::{BoxError, Router};
 use tower::ServiceBuilder;
@@ -34,6 +35,7 @@ pub fn limited(routes: Router<App>, limits: &Limits) -> Router<App> {
             .load_shed()
             .layer(GlobalConcurrencyLimitLayer::new(limits.requests))
             .timeout(Duration::from_secs(limits.request_s))
+            .map_response(too_large)
             .layer(RequestBodyLimitLayer::new(limits.body_bytes))
             .layer(DefaultBodyLimit::disable())
             .layer(CompressionLayer::new()),
@@ -76,6 +78,18 @@ async fn overload(error: BoxError) -> Problem {
         Problem::Busy
     } else {
         Problem::Internal(error.to_string())
+    }
+}
+
+/// The layer that counts the body refuses in a shape of its own.
+fn too_large<B: axum::body::HttpBody<Data = bytes::Bytes> + Send + 'static>(response: http::Response<B>) -> Response
+where
+    B::Error: Into<BoxError>,
+{
+    if response.status() == StatusCode::PAYLOAD_TOO_LARGE {
+        Problem::TooLarge.into_response()
+    } else {
+        response.map(Body::new)
     }
 }
 

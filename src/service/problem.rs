@@ -14,6 +14,8 @@ pub enum Problem {
     NotFound,
     /// The path is there, the method is not.
     MethodNotAllowed,
+    /// The request's body is larger than allowed.
+    TooLarge,
     /// Too many requests at once.
     Busy,
     /// The answer took too long.
@@ -60,6 +62,7 @@ impl IntoResponse for Problem {
             Self::MethodNotAllowed => {
                 (StatusCode::METHOD_NOT_ALLOWED, "this path answers other methods only".into(), Vec::new())
             }
+            Self::TooLarge => (StatusCode::PAYLOAD_TOO_LARGE, "the request's body is too large".into(), Vec::new()),
             Self::Busy => (StatusCode::SERVICE_UNAVAILABLE, "too many requests at once; try again".into(), Vec::new()),
             Self::TooSlow => (StatusCode::SERVICE_UNAVAILABLE, "the answer took too long".into(), Vec::new()),
             Self::Internal(text) => {

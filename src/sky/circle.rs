@@ -116,8 +116,11 @@ impl Circle {
     /// over a corner of the skyline: between two of them the skyline is one straight line.
     fn sample_angles(&self, horizon: &Horizon, near: f64, far: f64) -> Vec<f64> {
         let count = ((far - near) / TAU * SAMPLES as f64).ceil().max(1.0) as usize;
-        let right = (0..=count).map(|index| near + (far - near) * index as f64 / count as f64);
-        let mut angles: Vec<f64> = right.flat_map(|angle| [-angle, angle]).collect();
+        let mut angles = Vec::with_capacity(2 * (count + 1 + horizon.points().len()));
+        for index in 0..=count {
+            let angle = near + (far - near) * index as f64 / count as f64;
+            angles.extend([-angle, angle]);
+        }
         for &(azimuth_deg, _) in horizon.points() {
             let corners = self.angles_at_azimuth(azimuth_deg).into_iter().flatten();
             angles.extend(corners.filter(|angle| (near..=far).contains(&angle.abs())));
@@ -184,18 +187,23 @@ impl Circle {
     /// Narrows a crossing between two samples of opposite sign to 1e-9 radians: regula falsi with the Illinois change
     /// (Dowell and Jarratt 1971, BIT 11, 168-174).
     fn edge(&self, horizon: &Horizon, mut a: (f64, f64), mut b: (f64, f64)) -> f64 {
+        let mut kept_far = None;
         for _ in 0..60 {
             if b.0 - a.0 < 1e-9 || a.1 == b.1 {
                 break;
             }
             let angle = b.0 - b.1 * (b.0 - a.0) / (b.1 - a.1);
             let clearance = self.clearance_deg(horizon, angle);
-            let (near, far) = if (clearance >= 0.0) == (a.1 >= 0.0) { (&mut a, &mut b) } else { (&mut b, &mut a) };
-            far.1 *= 0.5;
-            *near = (angle, clearance);
             if clearance.abs() < 1e-9 {
                 return angle;
             }
+            let moves_a = (clearance >= 0.0) == (a.1 >= 0.0);
+            let (near, far) = if moves_a { (&mut a, &mut b) } else { (&mut b, &mut a) };
+            *near = (angle, clearance);
+            if kept_far == Some(moves_a) {
+                far.1 *= 0.5;
+            }
+            kept_far = Some(moves_a);
         }
         0.5 * (a.0 + b.0)
     }

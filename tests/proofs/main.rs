@@ -18,4 +18,7 @@ mod misbehaving;
 mod properties_sky;
 mod reference_optics;
 mod reference_sky;
+mod served;
+mod service_bow;
+mod service_conduct;
 mod table;
