@@ -5,8 +5,19 @@
 //! - [`air`] and [`water`]: refractive index;
 //! - [`ray`]: the stationary (Descartes) ray of a bow of any order;
 //! - [`drops`]: sizes of drops in rain, and what they take from a beam.
+//! The parts, each using only those above it:
+//! - [`air`] and [`water`]: refractive index;
+//! - [`ray`]: the stationary (Descartes) ray of a bow of any order; [`fresnel`]: what surfaces reflect and let through;
+//! - [`airy`]: the bow of one drop by Airy's theory;
+//! - [`partial`], [`mie`], [`debye`]: a sphere exactly, all its light or one order alone;
+//! - [`drops`]: sizes of drops in rain, and what they take from a beam.
 
 pub mod air;
+pub mod airy;
+pub mod debye;
 pub mod drops;
+pub mod fresnel;
+pub mod mie;
+pub mod partial;
 pub mod ray;
 pub mod water;

@@ -10,4 +10,5 @@
 )]
 
 mod reference_optics;
+mod reference_spheres;
 mod table;
