@@ -1,6 +1,8 @@
 //! Scattering of light by a sphere of any size: the exact solution of Lorenz (1890) and Mie (1908).
 
-use num_complex::Complex;
+use std::ops::Mul;
+
+use num_complex::{Complex, ComplexFloat};
 use thiserror::Error;
 
 use super::partial::PartialWaves;
@@ -49,22 +51,29 @@ impl Sphere {
             return Err(BadSphere::Index(index));
         }
         let terms = (x + 4.05 * x.cbrt() + 2.0).ceil() as usize;
-        let inside = log_derivatives(index * x, terms);
-        let outside = log_derivatives(Complex::new(x, 0.0), terms);
+        let outside = log_derivatives(x, terms);
         let mut waves = PartialWaves::with_capacity(x, terms);
-        // ψ and χ of order n and n - 1 (Riccati-Bessel functions of x).
-        let (mut psi, mut chi_before, mut chi) = (x.sin(), x.sin(), -x.cos());
-        for n in 1..=terms {
-            let order = n as f64;
-            let psi_before = psi;
-            psi /= outside[n].re + order / x;
-            (chi_before, chi) = (chi, (2.0 * order - 1.0) / x * chi - chi_before);
-            let (xi, xi_before) = (Complex::new(psi, -chi), Complex::new(psi_before, -chi_before));
-            let coefficient = |derivative: Complex<f64>| {
-                let factor = derivative + order / x;
-                (factor * psi - psi_before) / (factor * xi - xi_before)
-            };
-            waves.push(coefficient(inside[n] / index), coefficient(inside[n] * index));
+        if index.im == 0.0 {
+            let inside = log_derivatives(index.re * x, terms);
+            riccati(x, &outside, |n, factor_of_order, before, now| {
+                // With real factors the ratio p/(p - i q) needs no complex division.
+                let coefficient = |derivative: f64| {
+                    let factor = derivative + factor_of_order;
+                    let (p, q) = (factor * now.0 - before.0, factor * now.1 - before.1);
+                    Complex::new(p, q) * (p / (p * p + q * q))
+                };
+                waves.push(coefficient(inside[n] / index.re), coefficient(inside[n] * index.re));
+            });
+        } else {
+            let inside = log_derivatives(index * x, terms);
+            riccati(x, &outside, |n, factor_of_order, before, now| {
+                let coefficient = |derivative: Complex<f64>| {
+                    let factor = derivative + factor_of_order;
+                    let (p, q) = (factor * now.0 - before.0, factor * now.1 - before.1);
+                    p / (p - Complex::<f64>::i() * q)
+                };
+                waves.push(coefficient(inside[n] / index), coefficient(inside[n] * index));
+            });
         }
         let (q_ext, q_sca, asymmetry) = waves.efficiencies();
         Ok(Self { waves, q_ext, q_sca, asymmetry })
@@ -77,18 +86,33 @@ impl Sphere {
     }
 }
 
-/// Logarithmic derivatives of ψ_n(z) for n up to `terms`, by recurrence from well above where they settle.
-fn log_derivatives(z: Complex<f64>, terms: usize) -> Vec<Complex<f64>> {
-    let mut derivatives = vec![Complex::default(); terms + 1];
-    let start = (terms as f64).max(z.norm() + 4.05 * z.norm().cbrt()) as usize + 16;
-    let inverse = z.inv();
-    let mut derivative = Complex::<f64>::default();
+/// Calls back with n, n/x, and the Riccati-Bessel functions ψ and χ of x for order n - 1 and n.
+///
+/// Both by upward recurrence while they swing (n < x); beyond, where ψ fades, by its logarithmic derivative.
+fn riccati(x: f64, log_derivatives: &[f64], mut call: impl FnMut(usize, f64, (f64, f64), (f64, f64))) {
+    let (sin, cos) = x.sin_cos();
+    let (mut before, mut now) = ((cos, sin), (sin, -cos));
+    for (n, log_derivative) in log_derivatives.iter().enumerate().skip(1) {
+        let order = n as f64;
+        let up = (2.0 * order - 1.0) / x;
+        let psi = if order < x { up * now.0 - before.0 } else { now.0 / (log_derivative + order / x) };
+        (before, now) = (now, (psi, up * now.1 - before.1));
+        call(n, order / x, before, now);
+    }
+}
+
+/// Logarithmic derivatives of `ψ_n(z)` for n up to `terms`, by recurrence from well above where they settle.
+fn log_derivatives<T: ComplexFloat<Real = f64> + Mul<f64, Output = T> + Default>(z: T, terms: usize) -> Vec<T> {
+    let mut derivatives = vec![T::default(); terms + 1];
+    let start = (terms as f64).max(z.abs() + 4.05 * z.abs().cbrt()) as usize + 16;
+    let inverse = z.recip();
+    let mut derivative = T::default();
     for n in (1..=start).rev() {
-        let ratio = inverse * (n as f64);
+        let ratio = inverse * n as f64;
         if n <= terms {
             derivatives[n] = derivative;
         }
-        derivative = ratio - (derivative + ratio).inv();
+        derivative = ratio - (derivative + ratio).recip();
     }
     derivatives[0] = derivative;
     derivatives

@@ -6,18 +6,24 @@
 //! - [`ray`]: the stationary (Descartes) ray of a bow of any order;
 //! - [`drops`]: sizes of drops in rain, and what they take from a beam.
 //! The parts, each using only those above it:
+//!
 //! - [`air`] and [`water`]: refractive index;
 //! - [`ray`]: the stationary (Descartes) ray of a bow of any order; [`fresnel`]: what surfaces reflect and let through;
-//! - [`airy`]: the bow of one drop by Airy's theory;
+//! - [`airy`]: the bow of one drop by Airy's theory; [`uniform`]: the same, right away from the bow too;
+//! - [`background`]: light that never was in the drop, and that of high orders;
 //! - [`partial`], [`mie`], [`debye`]: a sphere exactly, all its light or one order alone;
 //! - [`drops`]: sizes of drops in rain, and what they take from a beam.
 
 pub mod air;
 pub mod airy;
+pub mod background;
 pub mod debye;
 pub mod drops;
 pub mod fresnel;
 pub mod mie;
 pub mod partial;
+pub mod population;
+pub mod profile;
 pub mod ray;
+pub mod uniform;
 pub mod water;

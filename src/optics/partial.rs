@@ -103,8 +103,8 @@ struct Summation<'a> {
 impl WithSimd for Summation<'_> {
     type Output = ();
 
-    /// The angular functions π_n and τ_n by upward recurrence (Wiscombe 1979): s = μ π_n, t = s - π_(n-1),
-    /// τ_n = n t - π_(n-1), π_(n+1) = s + (n + 1)/n t.
+    /// The angular functions π and τ of order n by upward recurrence (Wiscombe 1979): with s = μ π and t = s - (π before),
+    /// τ = n t - (π before) and (π after) = s + (n + 1)/n t.
     #[inline(always)]
     fn with_simd<S: Simd>(self, simd: S) {
         let lanes = S::F64_LANES;

@@ -9,6 +9,7 @@
     reason = "tests fail by panicking and tell how close they came"
 )]
 
+mod profiles;
 mod reference_optics;
 mod reference_spheres;
 mod table;
