@@ -2,12 +2,12 @@
 //!
 //! Everything here is a pure function of numbers: no clock, no I/O, no state. Wavelengths are in micrometres in
 //! vacuum, angles in degrees, rain in mm/h. The parts, each using only those above it:
-//! - [`air`] and [`water`]: refractive index;
+//! - [`air`], [`water`]: refractive index;
 //! - [`ray`]: the stationary (Descartes) ray of a bow of any order;
 //! - [`drops`]: sizes of drops in rain, and what they take from a beam.
 //! The parts, each using only those above it:
 //!
-//! - [`air`] and [`water`]: refractive index;
+//! - [`air`], [`water`]: refractive index;
 //! - [`ray`]: the stationary (Descartes) ray of a bow of any order; [`fresnel`]: what surfaces reflect and let through;
 //! - [`airy`]: the bow of one drop by Airy's theory; [`uniform`]: the same, right away from the bow too;
 //! - [`background`]: light that never was in the drop, and that of high orders;
@@ -17,6 +17,8 @@
 pub mod air;
 pub mod airy;
 pub mod background;
+pub mod beam;
+pub mod colour;
 pub mod debye;
 pub mod drops;
 pub mod fresnel;

@@ -10,6 +10,7 @@
 )]
 
 mod profiles;
+mod reference_colour;
 mod reference_optics;
 mod reference_spheres;
 mod table;

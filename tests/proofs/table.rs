@@ -25,6 +25,11 @@ impl Row {
         list.iter().map(|item| item.as_f64().expect("a number")).collect()
     }
 
+    /// A text of the inputs.
+    pub fn text(&self, key: &str) -> &str {
+        self.inputs[key].as_str().unwrap_or_else(|| panic!("{key} is no text in {:?}", self.inputs))
+    }
+
     /// Whether the inputs have the key.
     pub fn has(&self, key: &str) -> bool {
         self.inputs.contains_key(key)
