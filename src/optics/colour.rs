@@ -89,6 +89,7 @@ mod tests {
             assert!(shown.iter().all(|component| (0.0..=1.0).contains(component)), "{shown:?}");
             assert!((luminance(shown) - luminance(linear)).abs() < 1e-12);
         }
-        assert!(shown([0.2, 0.4, 0.6]) == [0.2, 0.4, 0.6] && shown([-1.0, -1.0, -1.0]) == [0.0; 3]);
+        let near = |shown: [f64; 3], wanted: [f64; 3]| shown.iter().zip(wanted).all(|(a, b)| (a - b).abs() < 1e-12);
+        assert!(near(shown([0.2, 0.4, 0.6]), [0.2, 0.4, 0.6]) && near(shown([-1.0, -1.0, -1.0]), [0.0; 3]));
     }
 }

@@ -105,6 +105,7 @@ impl WithSimd for Summation<'_> {
 
     /// The angular functions π and τ of order n by upward recurrence (Wiscombe 1979): with s = μ π and t = s - (π before),
     /// τ = n t - (π before) and (π after) = s + (n + 1)/n t.
+    #[allow(clippy::inline_always, reason = "only inlined code is compiled for the instruction set that was found")]
     #[inline(always)]
     fn with_simd<S: Simd>(self, simd: S) {
         let lanes = S::F64_LANES;

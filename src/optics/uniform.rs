@@ -121,9 +121,9 @@ fn leaving(n: f64, ray: &Ray, beyond: f64, side: f64) -> Option<Leaving> {
     for _ in 0..60 {
         let excess = deviation(incidence) - target;
         if excess > 0.0 {
-            far = incidence
+            far = incidence;
         } else {
-            near = incidence
+            near = incidence;
         }
         let step = incidence - excess / slope(incidence);
         let inside = step > near.min(far) && step < near.max(far);

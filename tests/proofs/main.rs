@@ -9,6 +9,7 @@
     reason = "tests fail by panicking and tell how close they came"
 )]
 
+mod light;
 mod profiles;
 mod reference_colour;
 mod reference_optics;
