@@ -86,7 +86,8 @@ mod tests {
         let curve = |swing: f64| -> Vec<f64> {
             (0..200).map(|step| 2.0 + swing * (f64::from(step) * 0.1).cos() + 0.02 * f64::from(step)).collect()
         };
-        assert_eq!(supernumeraries(&curve(1.0), 189), 3);
+        // The crest at the very end may rise further beyond it and does not count.
+        assert_eq!(supernumeraries(&curve(1.0), 189), 2);
         assert_eq!(supernumeraries(&curve(0.01), 189), 0);
     }
 

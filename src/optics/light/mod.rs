@@ -1,7 +1,8 @@
 //! The whole answer on light: what the bow looks like across, how it stands out, and what to expect in words.
 //!
 //! - [`asked`]: what can be asked, checked against the table of ranges;
-//! - [`answer`]: what is told; [`measure`]: peaks, widths and contrasts of a curve; [`words`]: the same in a sentence or two.
+//! - [`mod@answer`]: what is told;
+//! - `measure`: peaks, widths and contrasts of a curve; `words`: the same in a sentence or two.
 
 pub mod answer;
 pub mod asked;
