@@ -67,7 +67,7 @@ impl Scatterer {
             Drops::Rain { .. } => (f64::INFINITY, 240, 0),
             Drops::Equal { radius_um } => (radius_um, 61, if light == Light::White { 31 } else { 121 }),
             Drops::Gamma { effective_radius_um, .. } => {
-                (effective_radius_um, 240, if light == Light::White { 60 } else { 240 })
+                (effective_radius_um, 240, if light == Light::White { 100 } else { 240 })
             }
         };
         if radius_um < EXACT_BELOW_UM {

@@ -117,9 +117,9 @@ impl Scale {
 }
 
 /// Logarithm of the rain rate: 0.1 to 100 mm/h.
-const RAINS: Scale = Scale { first: -std::f64::consts::LN_10, step: std::f64::consts::LN_10 / 3.0, count: 10 };
+const RAINS: Scale = Scale { first: -std::f64::consts::LN_10, step: std::f64::consts::LN_10 / 2.0, count: 7 };
 /// Elevation of the Sun for the colours of the bow, degrees.
-const ELEVATIONS: Scale = Scale { first: -0.5, step: 1.0, count: 47 };
+const ELEVATIONS: Scale = Scale { first: -0.5, step: 2.0, count: 24 };
 /// The same for the brightness of the beam, which changes fast near the horizon.
 const BEAMS: Scale = Scale { first: -0.5, step: 0.1, count: 461 };
 

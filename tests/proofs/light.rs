@@ -129,18 +129,24 @@ fn sea_spray_makes_a_smaller_primary_and_a_larger_secondary() {
     assert!((sea.bows[1].radius_deg - fresh.bows[1].radius_deg - 1.7).abs() < 0.05);
 }
 
-/// White light is the sum of 22 curves: held against one every 3 nm.
+/// White light is the sum of 22 curves, of fewer sizes for small drops: held against one every 6 nm, of all sizes.
 #[test]
 fn white_light_is_summed_finely_enough() {
-    for drops in [Drops::Rain { mm_h: 0.5 }, Drops::Rain { mm_h: 20.0 }, Drops::Equal { radius_um: 300.0 }] {
+    for drops in [
+        Drops::Rain { mm_h: 0.5 },
+        Drops::Rain { mm_h: 20.0 },
+        Drops::Equal { radius_um: 300.0 },
+        Drops::Equal { radius_um: 40.0 },
+        Drops::Gamma { effective_radius_um: 20.0, effective_variance: 1.0 / 6.0 },
+    ] {
         let beam = Beam::new(10.0, 0.1);
         let coarse = Curves::new(drops, Water::Fresh, 10.0).unwrap().seen(&beam);
-        let scatterer = Scatterer::new(drops, Light::White);
+        let scatterer = Scatterer::new(drops, Light::OneWavelength);
         let mut fine = vec![[0.0; 3]; FINE.count];
-        for here in SPECTRUM[20..=360].iter().step_by(3) {
+        for here in SPECTRUM[20..=360].iter().step_by(6) {
             let n = Water::Fresh.index_in_air(here.wavelength_um, 10.0);
             let curve = scatterer.under_the_sun(here.wavelength_um, n).unwrap();
-            let power = 3.0 * colour::LUMENS_PER_WATT * here.sunlight_w_m2_nm * beam.transmittance(here.wavelength_um);
+            let power = 6.0 * colour::LUMENS_PER_WATT * here.sunlight_w_m2_nm * beam.transmittance(here.wavelength_um);
             for (sum, at) in fine.iter_mut().zip(&curve) {
                 *sum = std::array::from_fn(|axis| sum[axis] + power * here.matching[axis] * at.mean());
             }
@@ -153,7 +159,8 @@ fn white_light_is_summed_finely_enough() {
             }
         }
         println!("{drops:?}: white light within {worst:.4} of its greatest");
-        assert!(worst < 0.02, "{drops:?}: {worst}");
+        let allowed = if matches!(drops, Drops::Gamma { .. }) { 0.03 } else { 0.012 };
+        assert!(worst < allowed, "{drops:?}: {worst}");
     }
 }
 
