@@ -147,8 +147,10 @@ pub const AEROSOL_OPTICAL_DEPTH: Range = Range::real("aerosol_optical_depth", 0.
 pub const LIT_OPTICAL_DEPTH: Range = Range::real("lit_optical_depth", 0.001, 50.0, "");
 /// Wavelength of light, where refractive index and eye are known.
 pub const WAVELENGTH: Range = Range::real("wavelength_um", 0.38, 0.75, "um");
+/// The same in sea water: the range of Quan and Fry (1995).
+pub const SEA_WAVELENGTH: Range = Range::real("wavelength_um", 0.4, 0.7, "um");
 
-/// Every range that a query may name; the two temperatures differ by kind of water and the wider one stands here.
+/// Every range that a query may name; where they differ by kind of water the wider one stands here.
 pub const QUERY: [Range; 13] = [
     LAT,
     LON,

@@ -64,7 +64,7 @@ impl Averages {
         let argument = direction.stretch * cube_root * cube_root;
         let (even, odd) = if argument >= ARGUMENT_LAST {
             (0.5 / (std::f64::consts::PI * argument.sqrt()), 0.5 * argument.sqrt() / std::f64::consts::PI)
-        } else if argument <= ARGUMENT_FIRST {
+        } else if argument.is_nan() || argument <= ARGUMENT_FIRST {
             return Polarised::default();
         } else {
             let place = (argument - ARGUMENT_FIRST) / ARGUMENT_STEP + 1.0;

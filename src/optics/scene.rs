@@ -6,8 +6,8 @@
 //!
 //! - Scattering more than once: the light of an even scatterer of optical depth (1 - g) τ (similarity, van de Hulst 1980), less what once
 //!   scattered light brings on average, with g = 0.87 for drops of water.
-//! - Behind stands a grey of reflectance 0.2, as a rain cloud seen from its shaded side (common practice), under the Sun and sky of the hour; rain before it takes from it as much as rain lit by the sky adds.
-//!   The sky is lit by half of the sunlight that the air scatters out of the beam.
+//! - Behind stands a grey of reflectance 0.2, as a rain cloud seen from its shaded side (common practice), under the Sun and sky of
+//!   the hour; rain before it takes from it as much as rain lit by the sky adds.
 
 use std::sync::LazyLock;
 
@@ -23,6 +23,8 @@ use super::white::Curves;
 pub const SEEN_FROM: f64 = VISUAL_RANGE_CONTRAST;
 /// Share of the light that what stands behind the rain throws back.
 pub const BEHIND_REFLECTANCE: f64 = 0.2;
+/// Illuminance by sunlight above the air, lx (ASTM G173-03).
+const SUNLIGHT_ABOVE_LX: f64 = 133_100.0;
 /// Mean cosine of the scattering angle of large drops of water.
 const ASYMMETRY: f64 = 0.87;
 
@@ -82,10 +84,18 @@ impl Scene {
     }
 }
 
-/// Luminance of what stands behind, for `sunlight` that was `above` the air, both on a plane that faces it, and the Sun at an elevation.
-pub fn behind(sunlight: f64, above: f64, elevation_deg: f64, air_mass: f64) -> f64 {
+/// Illuminance of a level plane by a sky of sun and cloud, without the Sun itself, lx: 300 + 45,000 sin h.
+///
+/// Law of the Illuminating Engineering Society for a partly cloudy sky (Gillette, Pierpoint and Treado 1984; from memory).
+pub fn sky_illuminance_lx(elevation_deg: f64) -> f64 {
+    300.0 + 45_000.0 * elevation_deg.to_radians().sin().max(0.0)
+}
+
+/// Luminance of what stands behind, for `sunlight` that was `above` the air, both on a plane that faces it (in lux, or any unit if both
+/// are in it), and the Sun at an elevation. The light of the sky has the colour of sunlight above the air.
+pub fn behind(sunlight: f64, above: f64, elevation_deg: f64) -> f64 {
     let direct = sunlight * elevation_deg.to_radians().sin().max(0.0);
-    let from_sky = 0.5 * (above - sunlight).max(0.0) / air_mass;
+    let from_sky = above * sky_illuminance_lx(elevation_deg) / SUNLIGHT_ABOVE_LX;
     BEHIND_REFLECTANCE * (direct + from_sky) / std::f64::consts::PI
 }
 
@@ -143,7 +153,7 @@ static TABLE: LazyLock<Table> = LazyLock::new(|| {
         let elevation_deg = BEAMS.value(node);
         let beam = beam(elevation_deg);
         let sunlight = beam.xyz()[1];
-        (sunlight, behind(sunlight, above, elevation_deg, beam.air_mass))
+        (sunlight, behind(sunlight, above, elevation_deg))
     });
     Table { primary, beam }
 });

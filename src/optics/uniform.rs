@@ -5,8 +5,8 @@
 //! the true difference of path and the true brightness of the two rays that leave in each direction. It becomes Airy's theory
 //! at the bow and geometrical optics far from it.
 //!
-//! Against the exact light of one order (`tests/proofs/profiles.rs`), at the maxima: within 2 % from a size parameter of 1000 for the
-//! primary, 6 % for the secondary.
+//! Against the exact light of one order (`tests/proofs/profiles.rs`), at the maxima: the primary within 0.7 % from a size parameter of
+//! 570 (50 µm of radius), 0.1 % from 1100; the secondary's main maximum within 1.5 % and 0.6 %.
 
 use super::fresnel::{self, Polarised};
 use super::ray::Ray;

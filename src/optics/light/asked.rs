@@ -116,9 +116,9 @@ impl Asked {
             value
         };
         let water = self.water.unwrap_or_default();
-        let temperature = match water {
-            Water::Fresh => bounds::WATER_TEMPERATURE,
-            Water::Sea => bounds::SEA_TEMPERATURE,
+        let (temperature, wavelength) = match water {
+            Water::Fresh => (bounds::WATER_TEMPERATURE, bounds::WAVELENGTH),
+            Water::Sea => (bounds::SEA_TEMPERATURE, bounds::SEA_WAVELENGTH),
         };
         let drops = match (self.rain_mm_h, self.drop_radius_um, self.fog) {
             (rain, None, None) => AskedDrops::RainMmH(within(rain.unwrap_or(5.0), bounds::RAIN)),
@@ -132,7 +132,7 @@ impl Asked {
             water_temperature_c: within(self.water_temperature_c.unwrap_or(10.0), temperature),
             aerosol_optical_depth: within(self.aerosol_optical_depth.unwrap_or(0.1), bounds::AEROSOL_OPTICAL_DEPTH),
             lit_optical_depth: within(self.lit_optical_depth.unwrap_or(1.0), bounds::LIT_OPTICAL_DEPTH),
-            wavelength_um: self.wavelength_um.map(|wavelength| within(wavelength, bounds::WAVELENGTH)),
+            wavelength_um: self.wavelength_um.map(|asked| within(asked, wavelength)),
         };
         if self.sun_elevation_deg.is_none() {
             let Range { name, min, max, unit, .. } = bounds::SUN_ELEVATION;

@@ -56,7 +56,7 @@ pub fn answer(question: &Question, prepared: &Prepared) -> LightAnswer {
     let view = View::all_lit(question.lit_optical_depth);
     let told = |index: usize| AT_30_DEG - index;
     let lights = |sunlight: f64, above: f64| {
-        let behind = scene::behind(sunlight, above, question.sun_elevation_deg, beam.air_mass);
+        let behind = scene::behind(sunlight, above, question.sun_elevation_deg);
         Scene::new(view, sunlight, behind)
     };
     let illuminance = beam.xyz();

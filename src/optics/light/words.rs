@@ -38,6 +38,10 @@ pub(super) fn expect(question: &Question, bows: &[Bow], supernumeraries: u32) ->
             1 => sentences.push("One supernumerary bow inside the primary.".to_owned()),
             many => sentences.push(format!("{many} supernumerary bows inside the primary.")),
         }
+        sentences.push(
+            "A polarising filter strengthens the bow with its axis along the arc and nearly wipes it out across it."
+                .to_owned(),
+        );
     }
     sentences.join(" ")
 }
@@ -64,7 +68,9 @@ fn broad(primary: &Bow) -> bool {
 /// What was taken for granted.
 pub(super) fn assumed(question: &Question) -> Vec<String> {
     let mut assumed = vec![
-        format!("behind the rain: a grey of reflectance {BEHIND_REFLECTANCE} under the Sun and sky of the hour"),
+        format!(
+            "behind the rain: a grey of reflectance {BEHIND_REFLECTANCE} under the Sun and a partly cloudy sky of the hour"
+        ),
         "all rain along the view is sunlit; light scattered more than once is estimated, good to a factor of two"
             .to_owned(),
         "air at sea level with 0.3 atm-cm of ozone; the Sun's disc at its mean of 0.533 degrees".to_owned(),
