@@ -135,8 +135,37 @@ pub const MAX_BYTES: Range = Range::whole("max_bytes", 1000.0, 1.0e9, "bytes");
 /// Period over which an accumulated value was gathered.
 pub const OVER_MIN: Range = Range::real("over_min", 1.0, 1440.0, "min");
 
-/// Every range that a query may name; the two temperatures differ by kind of water and the wider one stands here.
-pub const QUERY: [Range; 7] = [LAT, LON, EYE_HEIGHT, WATER_TEMPERATURE, HOURS, STEP, THRESHOLD];
+/// Apparent elevation of the Sun in questions on light.
+pub const SUN_ELEVATION: Range = Range::real("sun_elevation_deg", -0.5, 90.0, "deg");
+/// Rain rate.
+pub const RAIN: Range = Range::real("rain_mm_h", 0.05, 200.0, "mm/h");
+/// Radius of nearly equal drops.
+pub const DROP_RADIUS: Range = Range::real("drop_radius_um", 1.0, 3000.0, "um");
+/// Vertical optical depth of the aerosol at 0.55 um.
+pub const AEROSOL_OPTICAL_DEPTH: Range = Range::real("aerosol_optical_depth", 0.0, 5.0, "");
+/// Optical depth of sunlit rain along the line of sight.
+pub const LIT_OPTICAL_DEPTH: Range = Range::real("lit_optical_depth", 0.001, 50.0, "");
+/// Wavelength of light, where refractive index and eye are known.
+pub const WAVELENGTH: Range = Range::real("wavelength_um", 0.38, 0.75, "um");
+/// The same in sea water: the range of Quan and Fry (1995).
+pub const SEA_WAVELENGTH: Range = Range::real("wavelength_um", 0.4, 0.7, "um");
+
+/// Every range that a query may name; where they differ by kind of water the wider one stands here.
+pub const QUERY: [Range; 13] = [
+    LAT,
+    LON,
+    EYE_HEIGHT,
+    WATER_TEMPERATURE,
+    HOURS,
+    STEP,
+    THRESHOLD,
+    SUN_ELEVATION,
+    RAIN,
+    DROP_RADIUS,
+    AEROSOL_OPTICAL_DEPTH,
+    LIT_OPTICAL_DEPTH,
+    WAVELENGTH,
+];
 
 /// Times the service computes for: the Sun's formulae were measured from 2003 to 2045 and drift slowly outside.
 pub const TIME_MIN: DateTime<Utc> = DateTime::from_timestamp(-631_152_000, 0).expect("1950-01-01");

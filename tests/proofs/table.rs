@@ -19,6 +19,12 @@ impl Row {
         self.inputs[key].as_f64().unwrap_or_else(|| panic!("{key} is no number in {:?}", self.inputs))
     }
 
+    /// The list of numbers of the inputs.
+    pub fn numbers(&self, key: &str) -> Vec<f64> {
+        let list = self.inputs[key].as_array().unwrap_or_else(|| panic!("{key} is no list in {:?}", self.inputs));
+        list.iter().map(|item| item.as_f64().expect("a number")).collect()
+    }
+
     /// A text of the inputs.
     pub fn text(&self, key: &str) -> &str {
         self.inputs[key].as_str().unwrap_or_else(|| panic!("{key} is no text in {:?}", self.inputs))
@@ -39,6 +45,11 @@ impl Row {
     /// The tolerance of an expected time, seconds.
     pub fn tolerance_s(&self, key: &str) -> f64 {
         self.tolerance[key]["abs_s"].as_f64().unwrap_or_else(|| panic!("{key} has no tolerance in seconds"))
+    }
+
+    /// Whether the inputs have the key.
+    pub fn has(&self, key: &str) -> bool {
+        self.inputs.contains_key(key)
     }
 
     /// A number that the row expects.
@@ -107,6 +118,5 @@ fn share_of_tolerance(got: &Value, expected: &Value, tolerance: &Value) -> Optio
         Some(rel) => rel.as_f64()? * expected.abs(),
         None => tolerance.get("abs")?.as_f64()?,
     };
-    let share = (got - expected).abs() / allowed;
-    if got == expected { Some(0.0) } else { Some(share).filter(|share| !share.is_nan()) }
+    Some((got - expected).abs() / allowed.max(f64::MIN_POSITIVE)).filter(|share| !share.is_nan())
 }
