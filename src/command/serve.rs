@@ -1,5 +1,6 @@
 //! `rainward serve`.
 
+use std::io::IsTerminal as _;
 use std::process::ExitCode;
 
 use rainward::config::{Log, LogFormat};
@@ -15,7 +16,8 @@ use tracing_subscriber::filter::ParseError;
 /// When the configured level is no filter.
 pub fn log(log: &Log, brief: bool) -> Result<(), ParseError> {
     let filter = EnvFilter::try_new(if brief { "warn" } else { &log.level })?;
-    let lines = tracing_subscriber::fmt().with_env_filter(filter).with_writer(std::io::stderr);
+    let colours = std::io::stderr().is_terminal();
+    let lines = tracing_subscriber::fmt().with_env_filter(filter).with_ansi(colours).with_writer(std::io::stderr);
     match log.format {
         LogFormat::Text => lines.init(),
         LogFormat::Json => lines.json().init(),

@@ -165,12 +165,12 @@ pub const PARAMETERS: [&str; 7] = ["site", "lat", "lon", "eye_height_m", "time",
 #[utoipa::path(
     get, path = "/v1/bow", tag = "computed",
     params(
-        ("site" = Option<String>, Query, description = "a configured site, instead of lat and lon"),
+        ("site" = Option<String>, Query, min_length = 1, description = "a configured site, instead of lat and lon"),
         ("lat" = Option<f64>, Query, description = "latitude, degrees"),
         ("lon" = Option<f64>, Query, description = "longitude, degrees, positive east"),
         ("eye_height_m" = Option<f64>, Query, description = "eye above the ground or water around, m; default 1.7, or the site's"),
         ("time" = Option<DateTime<Utc>>, Query, description = "RFC 3339, 1950 to 2100; default now"),
-        ("water" = Option<String>, Query, description = "fresh (rain, the default) or sea (spray, 35 g/kg)"),
+        ("water" = inline(Option<Water>), Query, description = "fresh (rain, the default) or sea (spray, 35 g/kg)"),
         ("water_temperature_c" = Option<f64>, Query, description = "temperature of the drops, degrees Celsius; default 10; sea water up to 30"),
     ),
     responses(

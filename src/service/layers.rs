@@ -51,7 +51,9 @@ pub fn observed(routes: Router<App>) -> Router<App> {
                 TraceLayer::new_for_http()
                     .make_span_with(span)
                     .on_request(DefaultOnRequest::new().level(Level::DEBUG))
-                    .on_response(DefaultOnResponse::new().level(Level::INFO)),
+                    // A line for every answer costs more than a bow: it is there for those who ask for it. Failures are
+                    // logged all the same.
+                    .on_response(DefaultOnResponse::new().level(Level::DEBUG)),
             )
             .layer(PropagateRequestIdLayer::x_request_id())
             .layer(fixed_header(header::X_CONTENT_TYPE_OPTIONS, "nosniff"))

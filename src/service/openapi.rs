@@ -25,7 +25,7 @@ pub fn base() -> utoipa::openapi::OpenApi {
 pub fn document(routes: utoipa::openapi::OpenApi) -> Value {
     let mut document = serde_json::to_value(routes).unwrap_or_default();
     let paths = document["paths"].as_object_mut().into_iter().flat_map(|paths| paths.values_mut());
-    let parameters = paths.filter_map(|path| path["get"]["parameters"].as_array_mut()).flatten();
+    let parameters = paths.filter_map(|path| path.pointer_mut("/get/parameters")?.as_array_mut()).flatten();
     for parameter in parameters {
         if let Some(range) = QUERY.iter().find(|range| parameter["name"] == range.name) {
             parameter["schema"] = json!({ "type": "number", "minimum": range.min, "maximum": range.max });

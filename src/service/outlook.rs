@@ -130,13 +130,13 @@ pub const PARAMETERS: [&str; 11] = [
 #[utoipa::path(
     get, path = "/v1/outlook", tag = "computed",
     params(
-        ("site" = Option<String>, Query, description = "a configured site, instead of lat and lon"),
+        ("site" = Option<String>, Query, min_length = 1, description = "a configured site, instead of lat and lon"),
         ("lat" = Option<f64>, Query, description = "latitude, degrees"),
         ("lon" = Option<f64>, Query, description = "longitude, degrees, positive east"),
         ("eye_height_m" = Option<f64>, Query, description = "eye above the ground or water around, m; default 1.7, or the site's"),
-        ("water" = Option<String>, Query, description = "fresh (rain, the default) or sea (spray, 35 g/kg)"),
+        ("water" = inline(Option<Water>), Query, description = "fresh (rain, the default) or sea (spray, 35 g/kg)"),
         ("water_temperature_c" = Option<f64>, Query, description = "temperature of the drops, degrees Celsius; default 10; sea water up to 30"),
-        ("feed" = Option<String>, Query, description = "a configured feed; default the first"),
+        ("feed" = Option<String>, Query, min_length = 1, description = "a configured feed; default the first"),
         ("from" = Option<DateTime<Utc>>, Query, description = "RFC 3339, 1950 to 2100; default the current minute"),
         ("hours" = Option<f64>, Query, description = "length, h; default 48"),
         ("step_min" = Option<f64>, Query, description = "step, min; default 5"),
