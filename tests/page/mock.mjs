@@ -90,16 +90,16 @@ function outlook(query, now) {
   const first = Math.ceil(now / 300e3) * 300e3 - 300e3;
   const steps = [];
   for (let ms = first; ms <= first + hours * 3600e3; ms += 300e3) steps.push(stepAt(ms, observer));
-  const sun_events = [];
+  const sky_events = [];
   steps.forEach((s, i) => {
     const before = steps[i - 1]?.sun.elevation_deg;
-    if (before < 0 !== s.sun.elevation_deg < 0 && i) sun_events.push({ time: s.time, event: before < 0 ? "sunrise" : "sunset" });
+    if (before < 0 !== s.sun.elevation_deg < 0 && i) sky_events.push({ time: s.time, event: before < 0 ? "sunrise" : "sunset" });
   });
   const { lat, lon, eye_height_m, dip_deg, skyline } = observer;
   return {
     observer: { lat, lon, eye_height_m, horizon: { dip_deg, skyline } },
     feed: { name: "coast-model", issued: iso(now - 1500e3), age_s: 1500, stale: false },
-    radius_deg: RADII, steps, windows: windowsOf(steps), sun_events,
+    radius_deg: RADII, steps, windows: windowsOf(steps), sky_events,
     assumed: [{ text: "Cloud base is not in the feed: taken from temperature and humidity, 400 m to 900 m." }, { text: "Drops follow the usual spread of sizes for their rain rate." }],
     cautions: [
       "Thunder: go inside, and wait 30 minutes after the last thunder.",
@@ -120,7 +120,8 @@ function bowAnswer(query, now) {
   const bows = ["primary", "secondary"].map((name, i) => {
     const { crown, feet, visible_arc_fraction } = bow(antisolar_point, RADII[name].red, observer);
     const below = crown ? {} : { below_horizon_by_deg: sun.elevation_deg - RADII[name].red - observer.dip_deg };
-    return { order: i + 1, name, radius_deg: RADII[name], crown, feet, visible_arc_fraction, above_horizon: crown !== null, ...below };
+    const top = crown ?? { azimuth_deg: antisolar_point.azimuth_deg, elevation_deg: RADII[name].red + antisolar_point.elevation_deg };
+    return { order: i + 1, name, radius_deg: RADII[name], crown: top, feet, visible_arc_fraction, above_horizon: crown !== null, ...below };
   });
   return { time: iso(time), observer: { lat: observer.lat, lon: observer.lon, eye_height_m: observer.eye_height_m }, sun: { ...sun, above_horizon: sun.elevation_deg > 0 }, antisolar_point, bows };
 }
