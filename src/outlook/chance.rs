@@ -1,6 +1,7 @@
 //! The chance of a bow at an instant: a walk out along the visible arc through every copy of the weather.
 
 use crate::optics::drops::rain_extinction_per_km;
+use crate::optics::scene::{SEEN_FROM, View, prominence};
 use crate::sky::horizon::{EARTH_RADIUS_M, REFRACTION_COEFFICIENT};
 use crate::sky::observer::Observer;
 use crate::weather::field::{Field, Series};
@@ -11,8 +12,6 @@ use super::copies::{COUNT, Copy, Spread, copies};
 use super::scene::{Look, Scene, Wind};
 use super::sight::{DIRECTIONS, FARTHEST_KM, PIECES, Piece, Ray, Sight};
 
-/// Contrast from which a bow counts as seen (the threshold of visual range, Koschmieder 1924).
-pub const CONTRAST_THRESHOLD: f64 = 0.02;
 /// Rain below this rate is taken as none, mm/h: a trace (common practice: gauges resolve 0.1 mm).
 pub const TRACE_MM_H: f32 = 0.01;
 /// Cloud base where the feed gives none, km above the ground.
@@ -28,18 +27,10 @@ const LAPSE_K_PER_KM: f64 = 6.5;
 /// Near-ground temperature below which precipitation is taken as snow, degrees Celsius (common practice: about 1).
 const SNOW_BELOW_C: f64 = 1.0;
 
-/// Phase function of the primary at its brightest in rain and of the rain just inside it, both with mean 1 over all
-/// directions: Marshall-Palmer rain under the Sun's disc by Lorenz-Mie theory gives about 0.98 and 0.27 at 450 nm, 1 mm/h
-/// (miepython). One pair serves all rain here.
-const PHASE: (f64, f64) = (0.98, 0.27);
-/// Luminance of the cloud or sky behind, as a share of the Sun's illuminance over 4 pi: an overcast of 3,000 cd/m2 under
-/// 80,000 lx (common practice for a dark shower cloud and a low Sun).
-const BEHIND: f64 = 0.5;
-
 /// What the weather makes of a sight.
 #[derive(Debug, Clone, Copy, PartialEq)]
 pub struct Verdict {
-    /// Probability that some part of the bow reaches [`CONTRAST_THRESHOLD`], 0..1.
+    /// Probability that some part of the bow reaches [`SEEN_FROM`], 0..1.
     pub chance: f64,
     /// Contrast of the bow where it is seen.
     pub prominence: f64,
@@ -175,7 +166,7 @@ fn walk(
     let mut outcome = Outcome::default();
     let mut dark = [1.0_f64; DIRECTIONS];
     for (ray, pieces) in rays.iter().flatten() {
-        let (mut passed, mut seen, mut lit) = (1.0_f64, 0.0, 0.0);
+        let (mut passed, mut seen, mut lit, mut fallen) = (1.0_f64, 0.0, 0.0, 0.0);
         for piece in pieces {
             let east_km = piece.range_km * ray.east - shift_km.0;
             let north_km = piece.range_km * ray.north - shift_km.1;
@@ -189,10 +180,16 @@ fn walk(
             let share = 0.5 * passed * (1.0 - passes);
             passed *= passes;
             seen += share;
+            fallen += share * f64::from(rain);
             lit += share * sky.lit(east_km, north_km, piece.range_km * ray.up, shade);
         }
-        let contrast = contrast(seen);
-        if contrast >= CONTRAST_THRESHOLD {
+        if seen <= 0.0 {
+            continue;
+        }
+        // As it would be with the Sun on all of it: a gap in the clouds is wider than the rain along one ray.
+        let view = View { lit: seen, optical_depth: -0.5 * passed.ln() };
+        let contrast = prominence(fallen / seen, view, shade.sun_elevation_deg);
+        if contrast >= SEEN_FROM {
             outcome.contrast = outcome.contrast.max(contrast);
             dark[ray.sector] = dark[ray.sector].min(1.0 - lit / seen);
         }
@@ -229,6 +226,7 @@ struct Shade {
     sun_east: f64,
     sun_north: f64,
     tan_sun: f64,
+    sun_elevation_deg: f64,
     cloud_base_km: f64,
 }
 
@@ -236,7 +234,13 @@ impl Shade {
     fn new(sight: &Sight, cloud_base_km: f64) -> Self {
         let sun = sight.sun.apparent;
         let level = sun.east.hypot(sun.north).max(1e-9);
-        Self { sun_east: sun.east / level, sun_north: sun.north / level, tan_sun: sun.up / level, cloud_base_km }
+        Self {
+            sun_east: sun.east / level,
+            sun_north: sun.north / level,
+            tan_sun: sun.up / level,
+            sun_elevation_deg: sun.elevation_deg(),
+            cloud_base_km,
+        }
     }
 
     /// Distance at which the ray to the Sun has climbed by a height, over a round Earth with the ray bent as in surveying:
@@ -246,12 +250,6 @@ impl Shade {
         (climb_km > 0.0)
             .then(|| RADIUS_KM * ((self.tan_sun * self.tan_sun + 2.0 * climb_km / RADIUS_KM).sqrt() - self.tan_sun))
     }
-}
-
-/// Contrast of the bow from what reaches the eye of a unit of scattering: `seen` = integral of extinction times
-/// exp(-2 optical depth) over range, 0..0.5.
-fn contrast(seen: f64) -> f64 {
-    (PHASE.0 - PHASE.1) * seen / (PHASE.1 * seen + BEHIND)
 }
 
 /// Sums over copies.
