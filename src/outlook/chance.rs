@@ -191,6 +191,9 @@ fn walk(
         let contrast = prominence(fallen / seen, view, shade.sun_elevation_deg);
         if contrast >= SEEN_FROM {
             outcome.contrast = outcome.contrast.max(contrast);
+            if lit.is_nan() {
+                return Outcome::default();
+            }
             dark[ray.sector] = dark[ray.sector].min(1.0 - lit / seen);
         }
     }
@@ -204,7 +207,8 @@ impl Sky<'_> {
     }
 
     /// Probability that sunlight reaches a point: each cloud layer is crossed toward the Sun, its cover there is the
-    /// probability of shade. Where the field does not reach that far, the cover over the point itself is taken.
+    /// probability of shade. Where the field does not reach that far, the cover over the point itself is taken; NaN where it
+    /// has clouds but not now.
     fn lit(&self, east_km: f64, north_km: f64, height_km: f64, shade: &Shade) -> f64 {
         if self.clouds.iter().all(Option::is_none) {
             return 1.0 - UNKNOWN_COVER;
@@ -215,7 +219,7 @@ impl Sky<'_> {
             let Some(away_km) = shade.crossing_km(layer_km - height_km) else { continue };
             let there = look.value(east_km + away_km * shade.sun_east, north_km + away_km * shade.sun_north);
             let cover = if there.is_nan() { look.value(east_km, north_km) } else { there };
-            lit *= if cover.is_nan() { 1.0 - UNKNOWN_COVER } else { 1.0 - f64::from(cover) };
+            lit *= 1.0 - f64::from(cover);
         }
         lit
     }

@@ -119,19 +119,32 @@ pub fn assumed(field: &Field, ask: &Ask) -> Vec<Assumption> {
     } else {
         say("cloud_total", format!("no cloud given: cover taken as {UNKNOWN_COVER} everywhere"));
     }
-    if !has(Quantity::CloudBase) {
-        say("cloud_base", format!("no cloud base given: taken as {CLOUD_BASE_KM} km above the ground"));
+    // The middle of each hour stands for it: enough to find what a feed leaves out now and then.
+    let hours = 0..ask.length.num_hours().max(1);
+    let times: Vec<i64> = hours.map(|hour| ask.from.timestamp() + hour * 3600 + 1800).collect();
+    let lacking = |quantity| times.iter().any(|&time_s| field.at(quantity, ask.observer.place, time_s).is_none());
+    let given = |quantity| if has(quantity) { "not always given: else" } else { "not given:" };
+    if lacking(Quantity::CloudBase) {
+        let text = format!("cloud base {} taken as {CLOUD_BASE_KM} km above the ground", given(Quantity::CloudBase));
+        say("cloud_base", text);
     }
-    match (has(Quantity::FreezingLevel), has(Quantity::Temperature)) {
+    match (!lacking(Quantity::FreezingLevel), !lacking(Quantity::Temperature)) {
         (true, true) => {}
-        (false, true) => say("freezing_level", "no freezing level given: taken from the temperature, 6.5 K/km".into()),
-        (true, false) => {
-            say("temperature", "no temperature given: snow only where the freezing level lies on the ground".into());
+        (false, true) => {
+            let text = format!("freezing level {} from the temperature, 6.5 K/km", given(Quantity::FreezingLevel));
+            say("freezing_level", text);
         }
-        (false, false) => say("temperature", "no temperature given: all that falls is taken as rain".into()),
+        (true, false) => {
+            let text = given(Quantity::Temperature);
+            say("temperature", format!("temperature {text} snow only where the freezing level lies on the ground"));
+        }
+        (false, false) => {
+            let text = given(Quantity::Temperature);
+            say("temperature", format!("temperature {text} all that falls is taken as rain"));
+        }
     }
-    if !has(Quantity::Visibility) {
-        say("visibility", format!("no visibility given: taken as {FARTHEST_KM} km"));
+    if lacking(Quantity::Visibility) {
+        say("visibility", format!("visibility {} taken as {FARTHEST_KM} km", given(Quantity::Visibility)));
     }
     if matches!(field.space, Space::Point(_)) {
         let pair = |a, b| has(a) && has(b);

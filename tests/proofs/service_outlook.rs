@@ -132,14 +132,14 @@ const REAL: [Real; 8] = [
         file: "edr-forecast-position-all-params.covjson",
         mapping: r#"
             [feeds.coveragejson]
-            parameters = { rain = "precipitation1h", cloud_low = "lowcloudcover", temperature = "temperature" }
-            units = { rain = "mm", cloud_low = "%", temperature = "Cel" }
+            parameters = { rain = "precipitation1h", temperature = "temperature" }
+            units = { rain = "mm", temperature = "Cel" }
             over_min = 60
         "#,
         place: "lat=60.17&lon=24.94",
         from: "2008-08-05T06:00:00Z",
         hours: 4,
-        assumed: "cloud_high",
+        assumed: "cloud_total",
         rain: true,
     },
     Real {
