@@ -300,3 +300,126 @@ fn uneven_axes_and_the_date_line_change_nothing() {
     assert_eq!(line, other_side);
     assert!(line.iter().flatten().any(|chance| *chance > 0.1), "{line:?}");
 }
+
+#[test]
+fn an_eye_above_the_rain_looks_down_into_it() {
+    let field = Grid::sunlit_rain().with(Quantity::CloudBase, |_, _| 400.0).0;
+    let seen_from = |eye_height_m: f64, skyline: &[(f64, f64)]| {
+        let observer = Observer::new(observer().place, 0.0, eye_height_m, Skyline::new(skyline).unwrap());
+        of(&field, &Ask { observer, ..ask(afternoon(), 1) }).steps[0].clone()
+    };
+    assert_eq!(seen_from(1.7, &[]).chance, Some(1.0));
+    let above = seen_from(3000.0, &[]);
+    assert_eq!((above.chance, above.limited_by), (Some(0.0), Some(Limit::TooFaint)), "only air before the eye");
+    assert_eq!(
+        seen_from(3000.0, &[(0.0, -80.0)]).chance,
+        Some(1.0),
+        "the rain below, through a horizon that goes there"
+    );
+    let over_cloud = Grid::sunlit_rain().with(Quantity::CloudBase, |_, _| 800.0).with(Quantity::CloudLow, |_, _| 1.0).0;
+    let high = Ask { observer: Observer::new(observer().place, 0.0, 1000.0, None), ..ask(afternoon(), 1) };
+    assert_ne!(
+        of(&over_cloud, &high).steps[0].limited_by,
+        Some(Limit::SunBlocked),
+        "cloud below the eye shades nothing"
+    );
+}
+
+#[test]
+fn what_is_known_to_be_hopeless_is_not_called_unknown() {
+    let rows = [
+        ("fog", Grid::sunlit_rain().with(Quantity::Visibility, |_, _| 50.0), Limit::TooFaint),
+        (
+            "fog without rain",
+            Grid::sunlit_rain().with(Quantity::Visibility, |_, _| 50.0).with(Quantity::Rain, |_, _| 0.0),
+            Limit::NoRain,
+        ),
+        (
+            "freezing on the ground",
+            Grid::sunlit_rain().with(Quantity::FreezingLevel, |_, _| 0.0).with(Quantity::Temperature, |_, _| 3.0),
+            Limit::Snow,
+        ),
+    ];
+    for (name, grid, limit) in rows {
+        let step = first(&grid.0);
+        assert_eq!((step.chance, step.limited_by), (Some(0.0), Some(limit)), "{name}");
+    }
+}
+
+#[test]
+fn cloud_that_is_in_no_layer_but_in_the_total_shades_too() {
+    let both = |low: f32, total: f32| {
+        let grid =
+            Grid::sunlit_rain().with(Quantity::CloudLow, move |_, _| low).with(Quantity::CloudTotal, move |_, _| total);
+        first(&grid.0).chance.unwrap()
+    };
+    assert_eq!(both(0.1, 1.0), 0.0, "an overcast whose layers are not all given");
+    assert_eq!(both(0.0, 0.0), 1.0);
+    assert!(
+        (both(0.4, 0.4) - first(&Grid::sunlit_rain().with(Quantity::CloudLow, |_, _| 0.4).0).chance.unwrap()).abs()
+            < 1e-6
+    );
+}
+
+#[test]
+fn a_calm_tells_no_more_than_no_wind() {
+    let mut calm = series(Some(270.0));
+    let times = calm.series(Quantity::WindSpeed).unwrap().times.clone();
+    calm.insert(Quantity::WindSpeed, Series { times, values: vec![0.2; 2] }).unwrap();
+    let chances =
+        |field: &Field| of(field, &ask(afternoon(), 1)).steps.into_iter().map(|s| s.chance).collect::<Vec<_>>();
+    assert_eq!(chances(&calm), chances(&series(None)));
+}
+
+#[test]
+fn what_lies_beyond_the_field_is_unknown_not_dry() {
+    // A grid that ends just behind the observer: the bow stands in the east, of which it says nothing.
+    let mut field = Field::new(
+        Space::Grid { lats_deg: vec![46.4, 48.4], lons_deg: vec![LON - 0.245, LON - 0.145, LON - 0.045] },
+        Some(afternoon()),
+    )
+    .unwrap();
+    let times = Times::Instants(vec![afternoon().timestamp() - 7200, afternoon().timestamp() + 7200]);
+    field.insert(Quantity::Rain, Series { times, values: vec![0.0; 12] }).unwrap();
+    assert_eq!(first(&field).limited_by, Some(Limit::NoData));
+}
+
+#[test]
+fn a_bow_that_sets_and_rises_between_two_steps_ends_a_window() {
+    let grid = Grid::round(7.5, 1.0);
+    let mut field = grid.with(Quantity::Rain, |_, _| 2.0).with(Quantity::CloudLow, |_, _| 0.0).0;
+    // The same rain on the day of a Sun that culminates just above the bow's radius.
+    let day = at("2026-03-27T00:00:00Z");
+    let times = Times::Instants((0..25).map(|hour| day.timestamp() + hour * 3600).collect());
+    let cells = field.cells();
+    for (quantity, value) in [(Quantity::Rain, 2.0), (Quantity::CloudLow, 0.0)] {
+        field.insert(quantity, Series { times: times.clone(), values: vec![value; 25 * cells] }).unwrap();
+    }
+    let mut ask = ask(at("2026-03-27T09:00:00Z"), 5);
+    // The bow is below the horizon for less than half an hour, between the steps at 11 and 12.
+    ask.observer = Observer::new(Place::new(50.2, 7.5).unwrap(), 0.0, 1.7, None);
+    for minutes in [1, 60] {
+        let answer = of(&field, &Ask { step: TimeDelta::minutes(minutes), ..ask.clone() });
+        let found: Vec<String> =
+            answer.windows.iter().map(|w| format!("{} {}", w.start.format("%H:%M"), w.end.format("%H:%M"))).collect();
+        assert_eq!(found, ["09:00 11:21", "11:49 14:00"], "steps of {minutes} min");
+    }
+}
+
+#[test]
+fn risings_behind_a_jagged_skyline_agree_with_the_steps() {
+    // Notches and teeth of 2 degrees all along the western half.
+    let points: Vec<(f64, f64)> = (90..180).map(|i| (f64::from(2 * i), if i % 2 == 0 { 2.0 } else { 9.0 })).collect();
+    let jagged = Observer::new(observer().place, 0.0, 1.7, Skyline::new(&points).unwrap());
+    let ask = Ask { observer: jagged, step: TimeDelta::minutes(1), ..ask(at("2031-05-04T15:00:00Z"), 8) };
+    let answer = outlook(&ask, None, None);
+    let possible = |step: &Step| !matches!(step.limited_by, Some(Limit::SunDown | Limit::SunTooHigh | Limit::Skyline));
+    let changes = answer.steps.windows(2).filter(|pair| possible(&pair[0]) != possible(&pair[1])).count();
+    let told = answer
+        .sky_events
+        .iter()
+        .filter(|event| matches!(event.event, SkyEventKind::BowRises | SkyEventKind::BowSets))
+        .count();
+    assert!(changes >= 6, "the skyline is not jagged enough: {changes}");
+    assert_eq!(told, changes);
+}
