@@ -25,4 +25,5 @@ mod reference_spheres;
 mod served;
 mod service_bow;
 mod service_conduct;
+mod service_light;
 mod table;

@@ -1,12 +1,12 @@
 //! What to expect, in words.
 
-use super::answer::Bow;
+use super::answer::LitBow;
 use super::asked::{AskedDrops, Question};
 use crate::optics::scene::{BEHIND_REFLECTANCE, SEEN_FROM};
 use crate::optics::water::Water;
 
 /// A few sentences on the bow.
-pub(super) fn expect(question: &Question, bows: &[Bow], supernumeraries: u32) -> String {
+pub(super) fn expect(question: &Question, bows: &[LitBow], supernumeraries: u32) -> String {
     let [primary, secondary] = bows else { return String::new() };
     if primary.brightest_deg.is_none() {
         return "Drops this small make no bow between 30 and 60 degrees from the antisolar point.".to_owned();
@@ -38,15 +38,19 @@ pub(super) fn expect(question: &Question, bows: &[Bow], supernumeraries: u32) ->
             1 => sentences.push("One supernumerary bow inside the primary.".to_owned()),
             many => sentences.push(format!("{many} supernumerary bows inside the primary.")),
         }
-        sentences.push(
-            "A polarising filter strengthens the bow with its axis along the arc and nearly wipes it out across it."
-                .to_owned(),
-        );
+        let across = match primary.degree_of_polarisation.unwrap_or(0.0) {
+            ..0.5 => "weakens it a little",
+            ..0.8 => "weakens it much",
+            _ => "nearly wipes it out",
+        };
+        sentences.push(format!(
+            "A polarising filter strengthens the bow with its axis along the arc and {across} with its axis across it."
+        ));
     }
     sentences.join(" ")
 }
 
-fn colours(question: &Question, primary: &Bow) -> &'static str {
+fn colours(question: &Question, primary: &LitBow) -> &'static str {
     if question.wavelength_um.is_some() {
         "in one colour"
     } else if broad(primary) {
@@ -61,7 +65,7 @@ fn colours(question: &Question, primary: &Bow) -> &'static str {
 }
 
 /// Fog bows are: their colours overlap to white.
-fn broad(primary: &Bow) -> bool {
+fn broad(primary: &LitBow) -> bool {
     primary.width_deg.is_none_or(|width| width > 3.5)
 }
 
