@@ -5,6 +5,9 @@ use super::asked::{AskedDrops, Question};
 use crate::optics::scene::{BEHIND_REFLECTANCE, SEEN_FROM};
 use crate::optics::water::Water;
 
+/// Elevation of the Sun under which little but red is left of a bow.
+const RED_BELOW_DEG: f64 = 2.0;
+
 /// A few sentences on the bow.
 pub(super) fn expect(question: &Question, bows: &[LitBow], supernumeraries: u32) -> String {
     let [primary, secondary] = bows else { return String::new() };
@@ -27,7 +30,8 @@ pub(super) fn expect(question: &Question, bows: &[LitBow], supernumeraries: u32)
         sentences.push("The Sun is too high: on level ground the bow lies below the horizon.".to_owned());
     }
     if primary.contrast >= SEEN_FROM {
-        let coloured = question.wavelength_um.is_none() && !broad(primary);
+        let coloured =
+            question.wavelength_um.is_none() && !broad(primary) && question.sun_elevation_deg >= RED_BELOW_DEG;
         sentences.push(match secondary.contrast {
             ..SEEN_FROM => "The secondary will hardly show.".to_owned(),
             _ if coloured => "The secondary shows too, its colours reversed, with a darker band between.".to_owned(),
@@ -55,7 +59,7 @@ fn colours(question: &Question, primary: &LitBow) -> &'static str {
         "in one colour"
     } else if broad(primary) {
         "broad and nearly white"
-    } else if question.sun_elevation_deg < 2.0 {
+    } else if question.sun_elevation_deg < RED_BELOW_DEG {
         "red, with little else"
     } else if question.sun_elevation_deg < 6.0 {
         "mostly red and orange, weak in blue"
