@@ -64,12 +64,12 @@ pub async fn run(app: &App, arguments: Arguments) -> ExitCode {
             Err(error) => eprintln!("rainward: {error}"),
         }
     } else {
-        print(&report, observer, app.clock().now());
+        print(&report, observer);
     }
     if report.error.is_some() { ExitCode::from(NOT_READ) } else { ExitCode::SUCCESS }
 }
 
-fn print(report: &CheckReport, observer: Observer, now: DateTime<Utc>) {
+fn print(report: &CheckReport, observer: Observer) {
     println!("Feed {} at {}", report.feed, report.host);
     let status = report.status.map_or_else(|| "no answer".into(), |status| format!("HTTP {status}"));
     let bytes = report.bytes.map_or_else(String::new, |bytes| format!(", {bytes} bytes"));
@@ -95,10 +95,9 @@ fn print(report: &CheckReport, observer: Observer, now: DateTime<Utc>) {
     );
     for quantity in &report.quantities {
         println!("{}", row(quantity));
-        for gap in &quantity.gaps {
-            if let (Some(start), Some(end)) = (gap.start, gap.end) {
-                println!("{:<15} gap from {} to {}", "", moment(start), moment(end));
-            }
+        if let Some(Some((start, end))) = quantity.gaps.first().map(|gap| gap.start.zip(gap.end)) {
+            let count = quantity.gaps.len();
+            println!("{:<15} gaps: {count}, the first from {} to {}", "", moment(start), moment(end));
         }
     }
     println!();
@@ -108,8 +107,10 @@ fn print(report: &CheckReport, observer: Observer, now: DateTime<Utc>) {
         println!("Note: {note}");
     }
     if let Some(field) = &report.field {
-        let day = TimeDelta::days(1);
-        let ask = Ask { observer, from: now, length: day, step: day, threshold: 0.0, radius_deg: 42.0 };
+        let (first, last) = field.extent().unwrap_or_default();
+        let from = DateTime::from_timestamp(first, 0).unwrap_or_default();
+        let (length, step) = (TimeDelta::seconds(last - first), TimeDelta::hours(1));
+        let ask = Ask { observer, from, length, step, threshold: 0.0, radius_deg: 42.0 };
         for assumption in assumed(field, &ask) {
             println!("The outlook will assume: {}", assumption.text);
         }

@@ -1,18 +1,17 @@
 //! The chance of a bow at an instant: a walk out along the visible arc through every copy of the weather.
 
 use crate::optics::drops::rain_extinction_per_km;
-use crate::sky::horizon::{EARTH_RADIUS_M, REFRACTION_COEFFICIENT};
+use crate::optics::scene::{SEEN_FROM, View, prominence};
 use crate::sky::observer::Observer;
 use crate::weather::field::{Field, Series};
 use crate::weather::quantity::Quantity;
 
 use super::answer::Limit;
 use super::copies::{COUNT, Copy, Spread, copies};
-use super::scene::{Look, Scene, Wind};
+use super::scene::{Scene, Wind};
+use super::shade::{Shade, Sky};
 use super::sight::{DIRECTIONS, FARTHEST_KM, PIECES, Piece, Ray, Sight};
 
-/// Contrast from which a bow counts as seen (the threshold of visual range, Koschmieder 1924).
-pub const CONTRAST_THRESHOLD: f64 = 0.02;
 /// Rain below this rate is taken as none, mm/h: a trace (common practice: gauges resolve 0.1 mm).
 pub const TRACE_MM_H: f32 = 0.01;
 /// Cloud base where the feed gives none, km above the ground.
@@ -21,25 +20,18 @@ pub const CLOUD_BASE_KM: f64 = 1.0;
 pub const MIDDLE_CLOUD_KM: f64 = 4.0;
 /// Height of high cloud, km (WMO International Cloud Atlas: 5 to 13 km in temperate latitudes).
 pub const HIGH_CLOUD_KM: f64 = 8.0;
-/// Cover where the feed says nothing of clouds, 0..1.
-pub const UNKNOWN_COVER: f64 = 0.5;
+/// Share of the way along the arc about which a copy must know the rain, and share of the copies that must know enough, for
+/// an answer.
+const LEAST_KNOWN: f64 = 0.5;
 /// Fall of temperature with height in the standard atmosphere, K/km (ISO 2533:1975).
 const LAPSE_K_PER_KM: f64 = 6.5;
 /// Near-ground temperature below which precipitation is taken as snow, degrees Celsius (common practice: about 1).
 const SNOW_BELOW_C: f64 = 1.0;
 
-/// Phase function of the primary at its brightest in rain and of the rain just inside it, both with mean 1 over all
-/// directions: Marshall-Palmer rain under the Sun's disc by Lorenz-Mie theory gives about 0.98 and 0.27 at 450 nm, 1 mm/h
-/// (miepython). One pair serves all rain here.
-const PHASE: (f64, f64) = (0.98, 0.27);
-/// Luminance of the cloud or sky behind, as a share of the Sun's illuminance over 4 pi: an overcast of 3,000 cd/m2 under
-/// 80,000 lx (common practice for a dark shower cloud and a low Sun).
-const BEHIND: f64 = 0.5;
-
 /// What the weather makes of a sight.
 #[derive(Debug, Clone, Copy, PartialEq)]
 pub struct Verdict {
-    /// Probability that some part of the bow reaches [`CONTRAST_THRESHOLD`], 0..1.
+    /// Probability that some part of the bow reaches [`SEEN_FROM`], 0..1.
     pub chance: f64,
     /// Contrast of the bow where it is seen.
     pub prominence: f64,
@@ -53,6 +45,8 @@ pub struct Weather<'a> {
     rain: &'a Series,
     rain_chance: Option<&'a Series>,
     clouds: Clouds<'a>,
+    /// Cover by all cloud, and the height of the lowest layer that is not given by itself.
+    rest: Option<(&'a Series, Option<f64>)>,
     copies: [Copy; COUNT],
     issued_s: i64,
     ground_km: f64,
@@ -90,14 +84,19 @@ impl<'a> Weather<'a> {
             layer(Quantity::CloudMiddle, Some(MIDDLE_CLOUD_KM)),
             layer(Quantity::CloudHigh, Some(HIGH_CLOUD_KM)),
         ];
+        let heights = [None, Some(MIDDLE_CLOUD_KM), Some(HIGH_CLOUD_KM)];
+        let mut rest = None;
         if clouds.iter().all(Option::is_none) {
             clouds[0] = layer(Quantity::CloudTotal, None);
+        } else if let Some(lowest) = clouds.iter().position(Option::is_none) {
+            rest = layer(Quantity::CloudTotal, heights[lowest]);
         }
         Some(Self {
             scene,
             rain: scene.series(Quantity::Rain)?,
             rain_chance: scene.series(Quantity::RainChance),
             clouds,
+            rest,
             copies: copies(),
             issued_s,
             ground_km: observer.ground_m / 1000.0,
@@ -108,19 +107,23 @@ impl<'a> Weather<'a> {
     /// The verdict on a sight; none where the field does not say.
     pub fn judge(&self, sight: &Sight, time_s: i64) -> Option<Verdict> {
         let overhead = self.overhead(time_s);
-        if overhead.snow {
-            let rain = f64::from(self.scene.overhead(Quantity::Rain, time_s)? as f32);
-            let limit = if rain > f64::from(TRACE_MM_H) { Limit::Snow } else { Limit::NoRain };
-            return Some(Verdict { chance: 0.0, prominence: 0.0, limit: Some(limit) });
-        }
         let rays: [Option<(Ray, [Piece; PIECES])>; DIRECTIONS] = sight.rays().map(|ray| {
             let ray = ray?;
             Some((ray, ray.pieces(overhead.visual_range_km, overhead.rain_top_km, self.eye_height_km)?))
         });
+        if overhead.snow || rays.iter().all(Option::is_none) {
+            let falls = self.scene.overhead(Quantity::Rain, time_s)? >= f64::from(TRACE_MM_H);
+            let limit = match (falls, overhead.snow) {
+                (false, _) => Limit::NoRain,
+                (true, true) => Limit::Snow,
+                (true, false) => Limit::TooFaint,
+            };
+            return Some(Verdict { chance: 0.0, prominence: 0.0, limit: Some(limit) });
+        }
         let wind = if self.scene.is_point() { self.scene.wind(time_s) } else { None };
         let lead_h = (time_s - self.issued_s) as f64 / 3600.0;
         let spread = Spread::at_lead(lead_h, !self.scene.is_point() || wind.is_some());
-        let shade = Shade::new(sight, overhead.cloud_base_km);
+        let shade = Shade::new(sight, overhead.cloud_base_km, self.eye_height_km);
         let mut sum = Sum::default();
         for copy in &self.copies {
             let shift_km = (spread.place_km * copy.east, spread.place_km * copy.north);
@@ -141,8 +144,7 @@ impl<'a> Weather<'a> {
             visual_range_km: km(Quantity::Visibility).unwrap_or(FARTHEST_KM),
             cloud_base_km,
             rain_top_km: freezing_km.map_or(cloud_base_km, |freezing| cloud_base_km.min(freezing.max(0.0))),
-            snow: temperature_c
-                .map_or(freezing_km.is_some_and(|km| km <= 0.0), |temperature| temperature < SNOW_BELOW_C),
+            snow: freezing_km.is_some_and(|km| km <= 0.0) || temperature_c.is_some_and(|cel| cel < SNOW_BELOW_C),
         }
     }
 
@@ -153,15 +155,9 @@ impl<'a> Weather<'a> {
             rain: look(self.rain),
             rain_chance: self.rain_chance.map(look),
             clouds: self.clouds.map(|layer| layer.map(|(series, height_km)| (look(series), height_km))),
+            rest: self.rest.map(|(series, height_km)| (look(series), height_km)),
         }
     }
-}
-
-/// Rain and clouds of one copy at an instant.
-struct Sky<'a> {
-    rain: Look<'a>,
-    rain_chance: Option<Look<'a>>,
-    clouds: [Option<(Look<'a>, Option<f64>)>; 3],
 }
 
 /// Walks out along the rays through one copy.
@@ -174,13 +170,15 @@ fn walk(
 ) -> Outcome {
     let mut outcome = Outcome::default();
     let mut dark = [1.0_f64; DIRECTIONS];
+    let (mut way_km, mut known_km, mut shade_unknown) = (0.0, 0.0, false);
     for (ray, pieces) in rays.iter().flatten() {
-        let (mut passed, mut seen, mut lit) = (1.0_f64, 0.0, 0.0);
+        let (mut passed, mut seen, mut lit, mut fallen) = (1.0_f64, 0.0, 0.0, 0.0);
         for piece in pieces {
             let east_km = piece.range_km * ray.east - shift_km.0;
             let north_km = piece.range_km * ray.north - shift_km.1;
             let rain = sky.rain.value(east_km, north_km);
-            outcome.known |= !rain.is_nan();
+            way_km += piece.length_km;
+            known_km += if rain.is_nan() { 0.0 } else { piece.length_km };
             if rain.is_nan() || rain < TRACE_MM_H || sky.is_dry(east_km, north_km, rank) {
                 continue;
             }
@@ -189,69 +187,27 @@ fn walk(
             let share = 0.5 * passed * (1.0 - passes);
             passed *= passes;
             seen += share;
-            lit += share * sky.lit(east_km, north_km, piece.range_km * ray.up, shade);
+            fallen += share * f64::from(rain);
+            lit += share * sky.lit(east_km, north_km, shade.eye_height_km + piece.range_km * ray.up, shade);
         }
-        let contrast = contrast(seen);
-        if contrast >= CONTRAST_THRESHOLD {
+        if seen <= 0.0 {
+            continue;
+        }
+        // As it would be with the Sun on all of it: a gap in the clouds is wider than the rain along one ray.
+        let view = View { lit: seen, optical_depth: -0.5 * passed.ln() };
+        let contrast = prominence(fallen / seen, view, shade.sun_elevation_deg);
+        if contrast >= SEEN_FROM {
+            if lit.is_nan() {
+                shade_unknown = true;
+                continue;
+            }
             outcome.contrast = outcome.contrast.max(contrast);
             dark[ray.sector] = dark[ray.sector].min(1.0 - lit / seen);
         }
     }
     outcome.chance = 1.0 - dark.iter().product::<f64>();
+    outcome.known = known_km >= LEAST_KNOWN * way_km && !(shade_unknown && outcome.contrast == 0.0);
     outcome
-}
-
-impl Sky<'_> {
-    fn is_dry(&self, east_km: f64, north_km: f64, rank: f32) -> bool {
-        self.rain_chance.is_some_and(|look| look.value(east_km, north_km) <= rank)
-    }
-
-    /// Probability that sunlight reaches a point: each cloud layer is crossed toward the Sun, its cover there is the
-    /// probability of shade. Where the field does not reach that far, the cover over the point itself is taken.
-    fn lit(&self, east_km: f64, north_km: f64, height_km: f64, shade: &Shade) -> f64 {
-        if self.clouds.iter().all(Option::is_none) {
-            return 1.0 - UNKNOWN_COVER;
-        }
-        let mut lit = 1.0;
-        for (look, layer_km) in self.clouds.iter().flatten() {
-            let layer_km = layer_km.unwrap_or(shade.cloud_base_km);
-            let Some(away_km) = shade.crossing_km(layer_km - height_km) else { continue };
-            let there = look.value(east_km + away_km * shade.sun_east, north_km + away_km * shade.sun_north);
-            let cover = if there.is_nan() { look.value(east_km, north_km) } else { there };
-            lit *= if cover.is_nan() { 1.0 - UNKNOWN_COVER } else { 1.0 - f64::from(cover) };
-        }
-        lit
-    }
-}
-
-/// The way from a point to the Sun.
-struct Shade {
-    sun_east: f64,
-    sun_north: f64,
-    tan_sun: f64,
-    cloud_base_km: f64,
-}
-
-impl Shade {
-    fn new(sight: &Sight, cloud_base_km: f64) -> Self {
-        let sun = sight.sun.apparent;
-        let level = sun.east.hypot(sun.north).max(1e-9);
-        Self { sun_east: sun.east / level, sun_north: sun.north / level, tan_sun: sun.up / level, cloud_base_km }
-    }
-
-    /// Distance at which the ray to the Sun has climbed by a height, over a round Earth with the ray bent as in surveying:
-    /// the root of d tan h + d^2/(2R') = climb. None for a layer below the point.
-    fn crossing_km(&self, climb_km: f64) -> Option<f64> {
-        const RADIUS_KM: f64 = EARTH_RADIUS_M / 1000.0 / (1.0 - REFRACTION_COEFFICIENT);
-        (climb_km > 0.0)
-            .then(|| RADIUS_KM * ((self.tan_sun * self.tan_sun + 2.0 * climb_km / RADIUS_KM).sqrt() - self.tan_sun))
-    }
-}
-
-/// Contrast of the bow from what reaches the eye of a unit of scattering: `seen` = integral of extinction times
-/// exp(-2 optical depth) over range, 0..0.5.
-fn contrast(seen: f64) -> f64 {
-    (PHASE.0 - PHASE.1) * seen / (PHASE.1 * seen + BEHIND)
 }
 
 /// Sums over copies.
@@ -283,7 +239,7 @@ impl Sum {
     }
 
     fn verdict(&self) -> Option<Verdict> {
-        if self.known <= 0.0 {
+        if self.known < LEAST_KNOWN * COUNT as f64 {
             return None;
         }
         let chance = self.chance / self.known;

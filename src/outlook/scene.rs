@@ -5,7 +5,7 @@ use crate::sky::observer::Observer;
 use crate::weather::field::{Field, KM_PER_DEG, Series, Space};
 use crate::weather::quantity::Quantity;
 
-/// Slowest wind that carries a series at one point out into space, m/s; below it the weather stands.
+/// Slowest wind that carries a series at one point out into space, m/s; a slower one tells nothing.
 const SLOWEST_WIND_M_S: f64 = 1.0;
 
 /// Unevenness of an axis that still counts as even, as a share of its step.
@@ -78,15 +78,16 @@ impl<'a> Scene<'a> {
         self.field.at(quantity, self.place, time_s).map(f64::from)
     }
 
-    /// The wind overhead, from its components or from speed and direction.
+    /// The wind overhead, from its components or from speed and direction; none in a calm.
     pub fn wind(&self, time_s: i64) -> Option<Wind> {
         let pair = |a, b| Some((self.overhead(a, time_s)?, self.overhead(b, time_s)?));
-        if let Some((east_m_s, north_m_s)) = pair(Quantity::WindEast, Quantity::WindNorth) {
-            return Some(Wind { east_m_s, north_m_s });
-        }
-        let (speed, from_deg) = pair(Quantity::WindSpeed, Quantity::WindFrom)?;
-        let (sin, cos) = from_deg.to_radians().sin_cos();
-        Some(Wind { east_m_s: -speed * sin, north_m_s: -speed * cos })
+        let components = pair(Quantity::WindEast, Quantity::WindNorth).or_else(|| {
+            let (speed, from_deg) = pair(Quantity::WindSpeed, Quantity::WindFrom)?;
+            let (sin, cos) = from_deg.to_radians().sin_cos();
+            Some((-speed * sin, -speed * cos))
+        });
+        let (east_m_s, north_m_s) = components?;
+        (east_m_s.hypot(north_m_s) >= SLOWEST_WIND_M_S).then_some(Wind { east_m_s, north_m_s })
     }
 
     /// A series at an instant. One at a point is laid out by the wind as a frozen field (Taylor 1938, Proc. R. Soc. A 164,
@@ -95,11 +96,7 @@ impl<'a> Scene<'a> {
         let lag_s_per_km = match wind {
             Some(Wind { east_m_s, north_m_s }) if self.is_point() => {
                 let square = east_m_s * east_m_s + north_m_s * north_m_s;
-                if square < SLOWEST_WIND_M_S * SLOWEST_WIND_M_S {
-                    (0.0, 0.0)
-                } else {
-                    (1000.0 * east_m_s / square, 1000.0 * north_m_s / square)
-                }
+                (1000.0 * east_m_s / square, 1000.0 * north_m_s / square)
             }
             _ => (0.0, 0.0),
         };
@@ -183,9 +180,19 @@ impl Look<'_> {
         let slice = |index: usize| {
             let values = &self.series.values[index * self.scene.cells + corner..];
             let (south, north) = (&values[..2], &values[grid.columns..grid.columns + 2]);
-            (1.0 - v) * ((1.0 - u) * south[0] + u * south[1]) + v * ((1.0 - u) * north[0] + u * north[1])
+            blend(blend(south[0], south[1], u), blend(north[0], north[1], u), v)
         };
-        let now = slice(before);
-        if weight > 0.0 { now + weight * (slice(after) - now) } else { now }
+        if weight > 0.0 { blend(slice(before), slice(after), weight) } else { slice(before) }
+    }
+}
+
+/// Between two values; a missing one counts only where it has weight.
+fn blend(from: f32, to: f32, weight: f32) -> f32 {
+    if weight <= 0.0 {
+        from
+    } else if weight >= 1.0 {
+        to
+    } else {
+        from + weight * (to - from)
     }
 }

@@ -113,18 +113,25 @@ impl Ray {
         Self { east: direction.east, north: direction.north, up: direction.up, sector: sector.min(DIRECTIONS - 1) }
     }
 
-    /// Pieces of range, growing by a constant factor, from [`NEAREST_KM`] to where rain ends or can no longer be seen: the
-    /// visual range, the top of the rain above the eye, or the ground below it. None when the way is shorter than the
-    /// nearest rain that counts.
+    /// Pieces of range, growing by a constant factor, over the way on which rain can be seen: at least [`NEAREST_KM`] away,
+    /// within the visual range, between the ground and the top of the rain. Heights are above the ground; an eye above the
+    /// rain looks down into it. None when there is no such way.
     pub fn pieces(&self, visual_range_km: f64, rain_top_km: f64, eye_height_km: f64) -> Option<[Piece; PIECES]> {
-        let to_top = if self.up > 0.0 { rain_top_km / self.up } else { f64::INFINITY };
-        let to_ground = if self.up < 0.0 { -eye_height_km / self.up } else { f64::INFINITY };
-        let end_km = visual_range_km.min(FARTHEST_KM).min(to_top).min(to_ground);
-        if end_km <= NEAREST_KM {
+        let over_top_km = eye_height_km - rain_top_km;
+        let (enter_km, leave_km) = if self.up < 0.0 {
+            (over_top_km.max(0.0) / -self.up, eye_height_km / -self.up)
+        } else if over_top_km >= 0.0 {
+            return None;
+        } else {
+            (0.0, if self.up > 0.0 { -over_top_km / self.up } else { f64::INFINITY })
+        };
+        let begin_km = enter_km.max(NEAREST_KM);
+        let end_km = visual_range_km.min(FARTHEST_KM).min(leave_km);
+        if end_km <= begin_km {
             return None;
         }
-        let growth = (end_km / NEAREST_KM).powf(1.0 / PIECES as f64);
-        let mut from_km = NEAREST_KM;
+        let growth = (end_km / begin_km).powf(1.0 / PIECES as f64);
+        let mut from_km = begin_km;
         Some(std::array::from_fn(|_| {
             let to_km = from_km * growth;
             let piece = Piece { range_km: 0.5 * (from_km + to_km), length_km: to_km - from_km };
@@ -143,10 +150,15 @@ mod tests {
         let ray = Ray { east: 0.0, north: 0.8, up: 0.6, sector: 0 };
         let pieces = ray.pieces(30.0, 1.5, 0.002).unwrap();
         let end: f64 = NEAREST_KM + pieces.iter().map(|piece| piece.length_km).sum::<f64>();
-        assert!((end - 2.5).abs() < 1e-9);
+        assert!((end - (1.5 - 0.002) / 0.6).abs() < 1e-9);
         assert!(ray.pieces(30.0, 0.05, 0.002).is_none(), "rain ends overhead below the nearest range");
         let down = Ray { up: -0.6, ..ray };
         assert!(down.pieces(30.0, 1.5, 0.002).is_none(), "the ground is right below");
         assert!(down.pieces(30.0, 1.5, 0.6).is_some(), "a high stand sees rain below");
+        assert!(ray.pieces(30.0, 1.5, 2.0).is_none(), "nothing to light above the rain");
+        let from_above = down.pieces(30.0, 1.5, 3.0).unwrap();
+        let begin = from_above[0].range_km - 0.5 * from_above[0].length_km;
+        let last = from_above[PIECES - 1];
+        assert!((begin - 2.5).abs() < 1e-9 && (last.range_km + 0.5 * last.length_km - 5.0).abs() < 1e-9);
     }
 }

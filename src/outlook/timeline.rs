@@ -3,7 +3,7 @@
 use chrono::{DateTime, TimeDelta, Utc};
 
 use crate::sky::observer::Observer;
-use crate::sky::search::crossings;
+use crate::sky::search::{Crossing, crossings};
 use crate::sky::sun::Sun;
 use crate::weather::field::{Field, Space};
 use crate::weather::quantity::Quantity;
@@ -11,13 +11,14 @@ use crate::weather::quantity::Quantity;
 use super::answer::{
     Assumption, Bearing, CAUTIONS, Limit, Outlook, SkyEvent, SkyEventKind, Step, THUNDER_CAUTION, round,
 };
-use super::chance::{CLOUD_BASE_KM, UNKNOWN_COVER, Weather};
+use super::chance::{CLOUD_BASE_KM, Weather};
 use super::copies::{COUNT, WIDER_WITHOUT_WIND};
+use super::shade::UNKNOWN_COVER;
 use super::sight::{FARTHEST_KM, Sight, margin_deg};
 use super::windows::windows;
 
-/// Step of the searches for risings and settings: the Sun's elevation turns round twice a day.
-const SEARCH_STEP: TimeDelta = TimeDelta::minutes(10);
+/// Longest step of the searches for risings and settings: the Sun's elevation turns round twice a day.
+const SEARCH_STEP_MIN: f64 = 10.0;
 
 /// What is asked of an outlook; every number was checked.
 #[derive(Debug, Clone, PartialEq)]
@@ -45,9 +46,10 @@ pub fn outlook(ask: &Ask, field: Option<&Field>, fetched: Option<DateTime<Utc>>)
     let steps: Vec<Step> = (0..=ask.length.num_milliseconds() / step_ms)
         .map(|index| step(ask, weather.as_ref(), ask.from + TimeDelta::milliseconds(index * step_ms)))
         .collect();
+    let crossings = Crossings::of(ask);
     Outlook {
-        windows: windows(ask, &steps),
-        sky_events: sky_events(ask),
+        windows: windows(ask, &steps, &crossings.bow),
+        sky_events: crossings.events(),
         assumed: field.map_or_else(Vec::new, |field| assumed(field, ask)),
         cautions: cautions(field, ask),
         steps,
@@ -75,23 +77,34 @@ fn step(ask: &Ask, weather: Option<&Weather<'_>>, time: DateTime<Utc>) -> Step {
     }
 }
 
-/// Risings and settings of Sun and bow over the horizon in use.
-pub fn sky_events(ask: &Ask) -> Vec<SkyEvent> {
-    let to = ask.from + ask.length;
-    let observer = &ask.observer;
-    let sun = crossings(|time| Sun::at(observer, time).over_horizon_deg(observer), ask.from, to, SEARCH_STEP);
-    let bow = crossings(|time| margin_deg(observer, ask.radius_deg, time), ask.from, to, SEARCH_STEP);
-    let named = |begins: bool, rise, set| if begins { rise } else { set };
-    let mut events: Vec<SkyEvent> =
-        sun.iter()
-            .map(|c| SkyEvent { time: c.time, event: named(c.begins, SkyEventKind::Sunrise, SkyEventKind::Sunset) })
-            .chain(bow.iter().map(|c| SkyEvent {
-                time: c.time,
-                event: named(c.begins, SkyEventKind::BowRises, SkyEventKind::BowSets),
-            }))
-            .collect();
-    events.sort_by_key(|event| event.time);
-    events
+/// When Sun and bow cross the horizon in use.
+struct Crossings {
+    sun: Vec<Crossing>,
+    bow: Vec<Crossing>,
+}
+
+impl Crossings {
+    fn of(ask: &Ask) -> Self {
+        let to = ask.from + ask.length;
+        let observer = &ask.observer;
+        // The margin may turn round at each point of a skyline, which the Sun passes at about 15 degrees an hour: four
+        // samples from one point to the next leave no turn unseen.
+        let narrowest_deg = observer.horizon.narrowest_deg();
+        let step = TimeDelta::seconds((60.0 * narrowest_deg.clamp(0.5, SEARCH_STEP_MIN)) as i64);
+        Self {
+            sun: crossings(|time| Sun::at(observer, time).over_horizon_deg(observer), ask.from, to, step),
+            bow: crossings(|time| margin_deg(observer, ask.radius_deg, time), ask.from, to, step),
+        }
+    }
+
+    fn events(&self) -> Vec<SkyEvent> {
+        let event = |c: &Crossing, rise, set| SkyEvent { time: c.time, event: if c.begins { rise } else { set } };
+        let sun = self.sun.iter().map(|c| event(c, SkyEventKind::Sunrise, SkyEventKind::Sunset));
+        let bow = self.bow.iter().map(|c| event(c, SkyEventKind::BowRises, SkyEventKind::BowSets));
+        let mut events: Vec<SkyEvent> = sun.chain(bow).collect();
+        events.sort_by_key(|event| event.time);
+        events
+    }
 }
 
 /// What a field lacks for this question and what is taken instead.
@@ -111,32 +124,47 @@ pub fn assumed(field: &Field, ask: &Ask) -> Vec<Assumption> {
         (Quantity::CloudHigh, "high cloud"),
     ];
     if layers.iter().any(|layer| has(layer.0)) {
+        let instead = if has(Quantity::CloudTotal) { "taken from the cover by all cloud" } else { "taken as none" };
         for (layer, words) in layers.into_iter().filter(|layer| !has(layer.0)) {
-            say(layer.name(), format!("no {words} given: taken as none"));
+            say(layer.name(), format!("no {words} given: {instead}"));
         }
     } else if has(Quantity::CloudTotal) {
         say("cloud_low", "no cloud layers given: all cloud taken as low cloud".into());
     } else {
         say("cloud_total", format!("no cloud given: cover taken as {UNKNOWN_COVER} everywhere"));
     }
-    if !has(Quantity::CloudBase) {
-        say("cloud_base", format!("no cloud base given: taken as {CLOUD_BASE_KM} km above the ground"));
+    // The middle of each hour stands for it: enough to find what a feed leaves out now and then.
+    let hours = 0..ask.length.num_hours().max(1);
+    let times: Vec<i64> = hours.map(|hour| ask.from.timestamp() + hour * 3600 + 1800).collect();
+    let lacking = |quantity| times.iter().any(|&time_s| field.at(quantity, ask.observer.place, time_s).is_none());
+    let given = |quantity| if has(quantity) { "not always given: else" } else { "not given:" };
+    if lacking(Quantity::CloudBase) {
+        let text = format!("cloud base {} taken as {CLOUD_BASE_KM} km above the ground", given(Quantity::CloudBase));
+        say("cloud_base", text);
     }
-    match (has(Quantity::FreezingLevel), has(Quantity::Temperature)) {
+    match (!lacking(Quantity::FreezingLevel), !lacking(Quantity::Temperature)) {
         (true, true) => {}
-        (false, true) => say("freezing_level", "no freezing level given: taken from the temperature, 6.5 K/km".into()),
-        (true, false) => {
-            say("temperature", "no temperature given: snow only where the freezing level lies on the ground".into());
+        (false, true) => {
+            let text = format!("freezing level {} from the temperature, 6.5 K/km", given(Quantity::FreezingLevel));
+            say("freezing_level", text);
         }
-        (false, false) => say("temperature", "no temperature given: all that falls is taken as rain".into()),
+        (true, false) => {
+            let text = given(Quantity::Temperature);
+            say("temperature", format!("temperature {text} snow only where the freezing level lies on the ground"));
+        }
+        (false, false) => {
+            let text = given(Quantity::Temperature);
+            say("temperature", format!("temperature {text} all that falls is taken as rain"));
+        }
     }
-    if !has(Quantity::Visibility) {
-        say("visibility", format!("no visibility given: taken as {FARTHEST_KM} km"));
+    if lacking(Quantity::Visibility) {
+        say("visibility", format!("visibility {} taken as {FARTHEST_KM} km", given(Quantity::Visibility)));
     }
     if matches!(field.space, Space::Point(_)) {
         let pair = |a, b| has(a) && has(b);
         if pair(Quantity::WindEast, Quantity::WindNorth) || pair(Quantity::WindSpeed, Quantity::WindFrom) {
-            say("space", "one point only: its hours are laid out in space along its wind".into());
+            let text = "one point only: its hours are laid out in space along its wind; in a calm, the same all round";
+            say("space", text.into());
         } else {
             say(
                 "wind",

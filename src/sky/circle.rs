@@ -71,16 +71,20 @@ impl Circle {
     }
 
     /// By how many degrees the circle reaches over the horizon; negative where all of it is hidden. Its sign and its value
-    /// near zero are those of the best point; where the top clears the whole skyline it is how far the top does.
+    /// near zero are those of the best point; where the top clears the whole skyline, or lies below all of it, it is how far
+    /// the top does.
     pub fn reach_deg(&self, horizon: &Horizon) -> f64 {
         let top_deg = self.point(0.0).elevation_deg();
         let (lowest_deg, highest_deg) = horizon.extent_deg();
         if top_deg - highest_deg > BULGE_DEG || lowest_deg == highest_deg {
             return top_deg - highest_deg;
         }
+        if top_deg - lowest_deg < -BULGE_DEG {
+            return top_deg - lowest_deg;
+        }
         let width = TAU / SAMPLES as f64;
         let best = self
-            .sample_angles(horizon, 0.0, PI)
+            .sample_angles(horizon, 0.0, self.half_width((lowest_deg - 2.0 * BULGE_DEG).max(-90.0)))
             .into_iter()
             .map(|angle| (angle, self.clearance_deg(horizon, angle)))
             .max_by(|a, b| a.1.total_cmp(&b.1))
@@ -109,7 +113,7 @@ impl Circle {
 
     fn clearance_deg(&self, horizon: &Horizon, angle: f64) -> f64 {
         let point = self.point(angle);
-        point.elevation_deg() - horizon.elevation_deg(point.azimuth_deg())
+        point.up.clamp(-1.0, 1.0).asin().to_degrees() - horizon.elevation_deg(point.azimuth_deg())
     }
 
     /// Even samples at angles from `near` to `far` on both sides of the top, and the places there where the circle passes

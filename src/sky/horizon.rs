@@ -104,6 +104,14 @@ impl Horizon {
         }
     }
 
+    /// Least distance in azimuth between two neighbouring points of the skyline, degrees; 360 where it has no two.
+    pub fn narrowest_deg(&self) -> f64 {
+        let points = self.points();
+        let next = points.iter().cycle().skip(1);
+        let widths = points.iter().zip(next).map(|(here, next)| (next.0 - here.0).rem_euclid(360.0));
+        widths.filter(|width| *width > 0.0).fold(360.0, f64::min)
+    }
+
     /// Lowest and highest elevation all round, degrees.
     pub fn extent_deg(&self) -> (f64, f64) {
         match self {

@@ -9,6 +9,7 @@
     reason = "a test fails by panicking and tells how close it came or what it skips"
 )]
 
+mod command_line;
 mod feeds_care;
 mod feeds_coverages;
 mod feeds_documents;
@@ -16,6 +17,7 @@ mod feeds_faults;
 mod feeds_random;
 mod light;
 mod misbehaving;
+mod outlook;
 mod profiles;
 mod properties_sky;
 mod reference_colour;
@@ -26,4 +28,5 @@ mod served;
 mod service_bow;
 mod service_conduct;
 mod service_light;
+mod service_outlook;
 mod table;

@@ -149,6 +149,14 @@ impl Hand {
 pub const FORECAST: &str =
     r#"{"t": ["2031-05-04T00:00:00Z", "2031-05-04T01:00:00Z"], "temp": [10.0, 12.0], "rain": [0.0, 1.5]}"#;
 
+/// The mapping that reads it, as it stands in a configuration.
+pub const MAPPING: &str = r#"
+    [feeds.json]
+    time = "/t"
+    values.temperature = { at = "/temp", unit = "Cel" }
+    values.rain = { at = "/rain", unit = "mm", over_min = 60, period = "before" }
+"#;
+
 /// A feed of such forecasts.
 pub fn spec(url: &str) -> FeedSpec {
     serde_json::from_value(serde_json::json!({

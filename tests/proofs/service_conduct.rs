@@ -86,11 +86,9 @@ async fn what_the_client_has_is_not_sent_again() {
 async fn answers_are_packed_on_request() {
     let served = Served::demo().await;
     let plain = served.get("/v1/outlook?site=gull-stairs").await;
-    for encoding in ["gzip", "br"] {
-        let packed = served.send(Method::GET, "/v1/outlook?site=gull-stairs", &[("Accept-Encoding", encoding)]).await;
-        assert_eq!(packed.header("content-encoding"), encoding);
-        assert!(packed.text.len() * 3 < plain.text.len());
-    }
+    let packed = served.send(Method::GET, "/v1/outlook?site=gull-stairs", &[("Accept-Encoding", "gzip")]).await;
+    assert_eq!(packed.header("content-encoding"), "gzip");
+    assert!(packed.text.len() * 3 < plain.text.len());
 }
 
 /// A service whose only feed answers when it pleases.
