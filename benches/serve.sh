@@ -78,3 +78,4 @@ compare() {
 
 compare bow '/v1/bow?lat=47.36&lon=-31.12&time=2031-05-04T17:40:00Z'
 compare outlook '/v1/outlook?site=gull-stairs'
+compare light '/v1/light?sun_elevation_deg=20'

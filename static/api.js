@@ -47,4 +47,6 @@ async function get(path, query, signal) {
 export const fetchSites = (signal) => get("v1/sites", {}, signal);
 export const fetchFeeds = (signal) => get("v1/feeds", {}, signal);
 /** place: {site} or {lat, lon, eye_height_m?}. */
+/** question: {sun_elevation_deg, rain_mm_h}. */
+export const fetchLight = (question, signal) => get("v1/light", question, signal);
 export const fetchOutlook = (place, signal) => get("v1/outlook", place, signal);

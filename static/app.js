@@ -1,8 +1,10 @@
 // Wiring: what the page knows, where it comes from, and when what is drawn anew.
 
 import { fetchFeeds, fetchOutlook, fetchSites } from "./api.js";
+import { Curve } from "./curve.js";
 import { byId, el, setText } from "./dom.js";
 import { bearing, coordinate, hhmm, hhmmUtc, span } from "./format.js";
+import { askLight } from "./light.js";
 import { day, makeFacts, showHours, showSay, showSources, showStep, showWindows, windowFor } from "./panel.js";
 import { PlaceSheet } from "./place.js";
 import { turn } from "./sky.js";
@@ -26,6 +28,7 @@ makeFacts();
 
 const view = new SkyView(byId("sky"));
 const timeline = new Timeline(byId("tape"), byId("tape-drawing"), byId("scrub"), (i) => lookAt(timeline.times[i]));
+const curve = new Curve();
 const sheet = new PlaceSheet((place) => load(place));
 
 function lookAt(ms) {
@@ -46,6 +49,7 @@ function draw() {
   const when = `${day(ms, now)} ${hhmm(ms)}`;
   const feet = view.draw(step, outlook, when);
   showStep(outlook, step, feet, answer.magnetic_offset_deg, now);
+  curve.show(step, feet.directions);
   timeline.show(index, words.tape.value(when, step, bearing(step.antisolar_point.azimuth_deg)));
   setText(byId("clock-local"), when);
   const gap = ms - now;
@@ -70,6 +74,10 @@ function accept(answer) {
   showHours(outlook, now);
   tellNotice();
   draw();
+  askLight(outlook.steps.map((s) => s.sun.elevation_deg)).then(
+    draw,
+    (error) => console.info("colours by eye, no light came:", error.kind ?? error.name),
+  );
 }
 
 function chooseMoment(ms) {

@@ -32,7 +32,7 @@ export const degrees = (value) => minus(`${Math.round(value)}°`);
 export const fine = (value) => minus(Math.abs(value) < 9.95 ? `${value.toFixed(1)}°` : `${Math.round(value)}°`);
 export const bearing = (azimuth_deg) => `${Math.round(azimuth_deg) % 360}°`;
 export const chance = (value) => (value > 0 && value < 0.05 ? "<0.1" : value.toFixed(1));
-export const percent = (share) => `${Math.round(share * 100)} %`;
+export const percent = (share) => `${Math.round(share * 100)}\u00a0%`;
 export const coordinate = (value) => minus(value.toFixed(3).replace(/\.?0+$/, ""));
 
 const WINDS = ["N", "NNE", "NE", "ENE", "E", "ESE", "SE", "SSE", "S", "SSW", "SW", "WSW", "W", "WNW", "NW", "NNW"];

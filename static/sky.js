@@ -101,6 +101,17 @@ export function onCircle(axis, radius_deg, position_deg) {
   return angles([0, 1, 2].map((i) => c * [e, n, u][i] + s * (p * top[i] + q * right[i])));
 }
 
+/** How an arc round `axis` leans at a point on it: its tangent's angle from the horizontal, counter-clockwise as seen, degrees in [0, 180). */
+export function arcLean(axis, { azimuth_deg, elevation_deg }) {
+  const [p, q] = [direction(axis), direction({ azimuth_deg, elevation_deg })];
+  const tangent = [p[1] * q[2] - p[2] * q[1], p[2] * q[0] - p[0] * q[2], p[0] * q[1] - p[1] * q[0]];
+  const [a, h] = [azimuth_deg * RAD, elevation_deg * RAD];
+  const along = (v) => tangent[0] * v[0] + tangent[1] * v[1] + tangent[2] * v[2];
+  const right = along([Math.cos(a), -Math.sin(a), 0]);
+  const up = along([-Math.sin(h) * Math.sin(a), -Math.sin(h) * Math.cos(a), Math.cos(h)]);
+  return (Math.atan2(up, right) / RAD + 360) % 180;
+}
+
 /** Elevation of the horizon in use at an azimuth: the skyline, straight between its points and round through north, else minus the dip. */
 export function horizonAt({ dip_deg = 0, skyline = [] }, azimuth_deg) {
   if (skyline.length === 0) return -dip_deg;

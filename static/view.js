@@ -1,8 +1,10 @@
 // Draws the sky opposite the Sun into one SVG: sky, bows in their true radii, land, then marks and figures.
 // The land is painted over the bows; what lies below the horizon shows on it as a dashed line.
 
+import { BowLight } from "./bowlight.js";
 import { set, setText, svg } from "./dom.js";
 import { bearing, wind } from "./format.js";
+import { lightAt } from "./light.js";
 import { belowHorizon, fit, foot, horizonAt, radiusAt, turn } from "./sky.js";
 import * as words from "./words.js";
 
@@ -12,6 +14,8 @@ const BANDS = [
   [558, "#c9dc62"], [535, "#7fca73"], [510, "#55b795"], [485, "#4c9cc0"], [460, "#5079b4"], [430, "#564f8c"],
 ];
 const END_NM = 400;
+/** Contrast of the trace of a bow where none is likely. */
+const TRACE = 0.15;
 const STAFF = [10, 20, 30, 40, 50];
 
 const bowNodes = (name) => {
@@ -33,6 +37,7 @@ export class SkyView {
     this.dark = svg("path", { class: "dark-band", "fill-rule": "evenodd" });
     this.inside = svg("circle", { class: "inside" });
     this.bows = ["primary", "secondary"].map(bowNodes);
+    this.light = new BowLight();
     this.land = svg("path", { fill: "url(#land)", class: "land" });
     this.lit = svg("path", { class: "lit" });
     this.below = svg("path");
@@ -42,8 +47,8 @@ export class SkyView {
     this.ring = svg("g", { class: "bearings" });
     this.marks = svg("g", { class: "marks" });
     node.append(
-      svg("defs", {}, gradient("air", "air-top", "air-low"), gradient("glow", "glow-top", "glow-low"), gradient("land", "land-top", "land-low"), svg("clipPath", { id: "below" }, this.below)),
-      this.air, this.glow, this.inside, this.dark, ...this.bows.flatMap((b) => [b.edges[0], b.group]), this.land, this.lit, this.night,
+      svg("defs", {}, gradient("air", "air-top", "air-low"), gradient("glow", "glow-top", "glow-low"), gradient("land", "land-top", "land-low"), ...this.light.defs, svg("clipPath", { id: "below" }, this.below)),
+      this.air, this.glow, this.inside, this.dark, ...this.bows.map((b) => b.group), this.light.node, ...this.bows.map((b) => b.edges[0]), this.land, this.lit, this.night,
       svg("g", { "clip-path": "url(#below)" }, ...this.bows.map((b) => b.edges[1])), this.plumb, this.staff, this.ring, this.marks,
     );
   }
@@ -56,6 +61,7 @@ export class SkyView {
     this.size = parseFloat(getComputedStyle(this.node).fontSize);
     set(this.node, { viewBox: `0 0 ${this.width} ${this.height}` });
     for (const rect of [this.air, this.glow, this.night]) set(rect, { width: this.width, height: this.height });
+    this.light.measure(this.width, this.height);
   }
 
   /** The projection for an azimuth faced; the strip below the frame is kept for the words "Face …". */
@@ -80,12 +86,13 @@ export class SkyView {
     for (const name of ["azimuth_deg", "scale", "x0", "y0"]) this.node.dataset[name] = camera[name];
     this.drawLight(step.sun.elevation_deg);
     this.drawBows(camera, axis, radii, step, sun_up);
+    this.drawComputed(camera, axis, step, sun_up);
     this.drawLand(camera, horizon);
     const feet = sun_up ? [-1, 1].map((side) => foot(axis, radii.primary.red, horizon, side)) : [null, null];
     this.drawMarks(camera, step, axis, feet, horizon, sun_up, belowHorizon(step, outlook));
     const [left, right] = feet.map((f) => f && bearing(f.azimuth_deg));
     setText(this.title(), words.sky.describe(label, step, words.sky.feet(left, right)));
-    return { left, right };
+    return { left, right, directions: feet };
   }
 
   title() {
@@ -102,6 +109,18 @@ export class SkyView {
     const low = Math.max(0, 1 - Math.abs(sun_deg - 2) / 22);
     set(this.glow, { opacity: (sun_deg > -6 ? 0.15 + 0.85 * low : 0.1).toFixed(2) });
     set(this.night, { opacity: Math.min(0.8, Math.max(0, (1 - sun_deg) / 10)).toFixed(2) });
+  }
+
+  /** The light that the service computed, over the colours by eye; those stay until it has come. */
+  drawComputed(camera, axis, step, sun_up) {
+    const { elevation_deg } = step.sun;
+    const light = elevation_deg > -0.5 ? lightAt(elevation_deg) : null;
+    // Where no bow is likely a trace is left, to show where it would stand.
+    const contrast = step.prominence === null ? light?.bows[0].contrast : Math.max(step.prominence, TRACE);
+    const strength = sun_up && light ? contrast / light.bows[0].contrast : 0;
+    this.light.draw(camera, axis, light, strength, Math.min(1, elevation_deg + 0.5).toFixed(2));
+    for (const { edges } of this.bows) if (light && sun_up) set(edges[0], { opacity: 0.4 });
+    this.node.dataset.light = light ? "computed" : "by-eye";
   }
 
   drawBows(camera, axis, radii, step, sun_up) {

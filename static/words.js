@@ -1,6 +1,7 @@
 // Every word the page says. Another language is another module of this shape.
 
-import { bearing, chance, degrees, fine, fists, span, wind } from "./format.js";
+import { bearing, chance, degrees, fine, fists, percent, span, wind } from "./format.js";
+import { RAIN_MM_H } from "./light.js";
 
 /** Texts that stand still, by the data-word and data-label names in index.html. */
 export const still = {
@@ -12,7 +13,11 @@ export const still = {
   assumed_title: "Assumed, because the feed does not say",
   cautions_title: "Before you go",
   drawing_note:
-    "The drawing is to scale: bearings from true north, heights in degrees and in fists at arm's length (about 10° each). Colours show the order of the bands, not their exact tint. Times are those of your device.",
+    `The drawing is to scale: bearings from true north, heights in degrees and in fists at arm's length (about 10° each). Its colours are computed for rain of ${RAIN_MM_H} mm/h, as a camera set to daylight shows them; how strong the bow is drawn follows the contrast of the hour, with a trace left where none is likely. Without an answer from the server they show the order of the bands only. Times are those of your device.`,
+  across_title: "Across the bow: brightness, colours, filter",
+  across_caption: "Angle from the antisolar point. Dashed: the ray of geometry. Solid: where it is brightest. Below: how much of the rain's light is polarised along the arc.",
+  across_note: `For rain of ${RAIN_MM_H} mm/h, all of it lit, of optical depth 1: the outlook does not tell the rain behind an hour. Behind it stands a grey cloud; what it sends is good to a factor of two.`,
+  filter_title: "Polarising filter",
   dock_label: "Time and place",
   scrub_label: "Time",
   key_now: "Now",
@@ -119,6 +124,38 @@ export const facts = {
   sun: ["Sun behind you", (az, el) => `${bearing(az)}, ${el < 0 ? `${fine(-el)} down` : `${fine(el)} up`}`],
   chance: ["Chance", (value) => (value === null ? "unknown" : chance(value))],
   prominence: ["Contrast", (value) => (value === null || value === undefined ? "–" : `${value < 0.01 && value > 0 ? "<0.01" : value.toFixed(2)} (0.02 just shows)`)],
+};
+
+const strength = (contrast) => (contrast < 0.02 ? "too faint to see" : contrast < 0.08 ? "faint" : contrast < 0.3 ? "clear" : contrast < 1 ? "bright" : "very bright");
+const colours = (sun_deg) => (sun_deg < 2 ? "red, with little else" : sun_deg < 6 ? "mostly red and orange, weak in blue" : "in all its colours");
+const tenth = (value) => `${value.toFixed(1)}°`;
+/** How to turn a filter to an arc that leans so: 0 is level, 90 upright, less leans right at its top. */
+const lean = (deg) => (deg > 88 && deg < 92 ? "upright" : `${degrees(deg < 90 ? deg : 180 - deg)} from level, its top ${deg < 90 ? "to the right" : "to the left"}`);
+
+export const light = {
+  expect: (contrast, sun_deg, known) => `${known ? "The bow of this hour, if it comes" : "With such rain"}: ${strength(contrast)}${contrast < 0.02 ? "" : `, ${colours(sun_deg)}`}.`,
+  waiting: "The light of this hour has not come from the server yet.",
+  sun_down: "The Sun is down: no light to make a bow.",
+  names: ["primary", "secondary"],
+  short: ["1st", "2nd"],
+  luminance: (most) => `${most.toLocaleString("en-GB")} cd/m²`,
+  polarised: "polarised, 0 to 100 %",
+  angle: (deg) => `${deg}°`,
+  facts: ({ bows, supernumeraries }) => [
+    ...bows.map((bow, i) => [
+      ["Primary", "Secondary"][i],
+      `ray ${tenth(bow.radius_deg)}, ${bow.brightest_deg === null ? "no peak" : `brightest ${tenth(bow.brightest_deg)}`}${bow.width_deg === null ? "" : `, ${tenth(bow.width_deg)} wide`}, contrast ${bow.contrast.toFixed(2)}${bow.degree_of_polarisation === null ? "" : `, ${percent(bow.degree_of_polarisation)} polarised`}`,
+    ]),
+    ["Supernumerary bows", supernumeraries === 0 ? "none that show in such rain" : String(supernumeraries)],
+  ],
+  polariser: ({ along_passes, across_passes }, leans) => [
+    `The bow's light swings along the arc. With the filter's axis along the arc ${percent(along_passes)} of it passes, across it ${percent(across_passes)}: there the bow all but vanishes.`,
+    "Crown: strongest with the axis level, gone with the axis upright.",
+    ...["Left foot", "Right foot"].flatMap((name, i) => (leans[i] === null ? [] : [`${name}: strongest with the axis ${lean(leans[i])}; gone a quarter turn from there.`])),
+    "One turn does not suit the whole arc: a wide lens shows part of it strong and part of it gone.",
+  ],
+  describe: ({ bows }) =>
+    `Luminance across the bow: ${bows.map((bow, i) => `${light.names[i]} brightest at ${bow.brightest_deg === null ? "no angle" : tenth(bow.brightest_deg)}, contrast ${bow.contrast.toFixed(2)}`).join("; ")}.`,
 };
 
 export const windows = {

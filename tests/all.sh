@@ -116,7 +116,7 @@ if [ -n "$quick" ]; then
     for name in rustdoc 'release build' 'page on the service' peers benches; do skip "$name" quick; done
 else
     stage one rustdoc env RUSTDOCFLAGS='-D warnings' cargo doc --locked --no-deps --document-private-items
-    stage one 'release build' cargo build --locked --release
+    stage one 'release build' cargo build --locked --release --bin rainward --example light_rows
     if [ -f tests/page/package.json ]; then stage node 'page on the service' page_real; else skip 'page on the service' 'not here'; fi
     stage pytest peers $venv/bin/python -B -m pytest tests/peers
     if compgen -G 'benches/*.rs' >/dev/null; then

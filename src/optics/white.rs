@@ -46,6 +46,11 @@ impl Curves {
         Ok(Self { by_wavelength })
     }
 
+    /// Memory held, bytes.
+    pub fn size_bytes(&self) -> usize {
+        self.by_wavelength.iter().map(|curve| size_of_val(curve.as_slice())).sum()
+    }
+
     /// Adds the curves up under a beam. Between wavelengths a curve counts as the straight mean of its neighbours, beyond the ends as
     /// the last: the error of all that is about 1 % of the greatest brightness, 3 % in fog (`tests/proofs`).
     pub fn seen(&self, beam: &Beam) -> Vec<Seen> {

@@ -7,6 +7,7 @@ pub mod entity_tag;
 pub mod feeds;
 pub mod health;
 pub mod layers;
+pub mod light;
 pub mod openapi;
 pub mod outlook;
 pub mod page;
@@ -30,6 +31,7 @@ use tokio::sync::Semaphore;
 use crate::clock::Clock;
 use crate::config::Config;
 use crate::demo;
+use crate::optics::scene;
 use crate::weather::feeds::{Feeds, Options, SetupError};
 
 /// Longest time for a client to send its request head.
@@ -48,6 +50,7 @@ struct Inner {
     feeds: Feeds,
     clock: Clock,
     answers: outlook::Answers,
+    curves: light::Curves,
     stopping: AtomicBool,
 }
 
@@ -63,8 +66,9 @@ impl App {
             ..Options::default()
         };
         let feeds = Feeds::with_options(&config.feeds, clock.clone(), options)?;
-        let answers = outlook::Answers::new(config.limits.answers_mb * 1_000_000);
-        Ok(Self(Arc::new(Inner { config, feeds, clock, answers, stopping: AtomicBool::new(false) })))
+        let room = config.limits.answers_mb * 1_000_000;
+        let (answers, curves) = (outlook::Answers::new(room), light::Curves::new(room));
+        Ok(Self(Arc::new(Inner { config, feeds, clock, answers, curves, stopping: AtomicBool::new(false) })))
     }
 
     /// The configuration.
@@ -87,6 +91,11 @@ impl App {
         &self.0.answers
     }
 
+    /// Light worked out so far.
+    pub fn curves(&self) -> &light::Curves {
+        &self.0.curves
+    }
+
     /// Whether the service was told to stop.
     pub fn is_stopping(&self) -> bool {
         self.0.stopping.load(Ordering::Relaxed)
@@ -98,6 +107,8 @@ pub async fn serve(listener: TcpListener, app: App, shutdown: impl Future<Output
     let limit = app.config().limits.connections;
     let slots = Arc::new(Semaphore::new(limit));
     let routes = router::router(app.clone());
+    // The first outlook shall not wait for the tables of light, nor the start for them.
+    drop(tokio::task::spawn_blocking(scene::prepare));
     let graceful = GracefulShutdown::new();
     let mut shutdown = std::pin::pin!(shutdown);
     loop {

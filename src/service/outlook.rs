@@ -50,6 +50,11 @@ impl Answers {
             .build();
         Self { finished, cores: Arc::new(Semaphore::new(cores)) }
     }
+
+    /// The leave to compute: one for each core.
+    pub(super) fn cores(&self) -> Arc<Semaphore> {
+        self.cores.clone()
+    }
 }
 
 /// The weather that an outlook rests on.

@@ -59,6 +59,13 @@ impl Query {
         self.problems.push(FieldProblem { field, detail: detail.into() });
     }
 
+    /// Notes that a parameter cannot be used, unless that is known.
+    pub fn refuse_once(&mut self, field: &str, detail: impl Into<String>) {
+        if !self.problems.iter().any(|problem| problem.field == field) {
+            self.refuse(field, detail);
+        }
+    }
+
     /// A text, where given and not empty.
     pub fn text(&mut self, name: &str) -> Option<String> {
         let value = self.given.get(name)?.clone();
@@ -67,6 +74,17 @@ impl Query {
             return None;
         }
         Some(value)
+    }
+
+    /// One of some names, where given.
+    pub fn choice<T: Copy>(&mut self, name: &str, choices: &[(&str, T)]) -> Option<T> {
+        let value = self.text(name)?;
+        let chosen = choices.iter().find(|choice| choice.0 == value);
+        if chosen.is_none() {
+            let names: Vec<&str> = choices.iter().map(|choice| choice.0).collect();
+            self.refuse(name, format!("must be {}", names.join(" or ")));
+        }
+        chosen.map(|choice| choice.1)
     }
 
     /// A number within its range, where given.
@@ -123,14 +141,7 @@ impl Query {
 
     /// The water of the drops and its temperature in degrees Celsius.
     pub fn water(&mut self) -> (Water, f64) {
-        let water = match self.text("water").as_deref() {
-            None | Some("fresh") => Water::Fresh,
-            Some("sea") => Water::Sea,
-            Some(_) => {
-                self.refuse("water", "must be fresh or sea");
-                Water::Fresh
-            }
-        };
+        let water = self.choice("water", &[("fresh", Water::Fresh), ("sea", Water::Sea)]).unwrap_or_default();
         let range = if water == Water::Sea { SEA_TEMPERATURE } else { WATER_TEMPERATURE };
         (water, self.number(&range).unwrap_or(10.0))
     }

@@ -5,7 +5,7 @@ use axum::routing::get;
 use utoipa_axum::router::OpenApiRouter;
 use utoipa_axum::routes;
 
-use super::{App, bow, entity_tag, feeds, health, layers, openapi, outlook, page, problem, sites};
+use super::{App, bow, entity_tag, feeds, health, layers, light, openapi, outlook, page, problem, sites};
 
 /// All routes of the service.
 pub fn router(app: App) -> Router {
@@ -13,6 +13,7 @@ pub fn router(app: App) -> Router {
         // What is computed.
         .routes(routes!(bow::bow))
         .routes(routes!(outlook::outlook))
+        .routes(routes!(light::light))
         // What is configured and how it fares.
         .routes(routes!(sites::sites))
         .routes(routes!(feeds::feeds))

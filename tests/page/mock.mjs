@@ -5,6 +5,7 @@ import { createServer } from "node:http";
 import { readFile } from "node:fs/promises";
 import { fileURLToPath } from "node:url";
 import { dirname, extname, join, normalize } from "node:path";
+import { lightAnswer } from "./mocklight.mjs";
 import { RADII, bow, horizonFor, sunAt } from "./mocksky.mjs";
 
 const STATIC = join(dirname(fileURLToPath(import.meta.url)), "../../static");
@@ -132,6 +133,7 @@ export async function startMock({ port = 0, now = Date.now } = {}) {
     "/v1/sites": () => ({ sites: SITES }),
     "/v1/feeds": () => ({ feeds: FEEDS }),
     "/v1/bow": (query) => bowAnswer(query, now()),
+    "/v1/light": lightAnswer,
     "/v1/outlook": (query) => outlook(query, now()),
   };
   const server = createServer(async (request, response) => {

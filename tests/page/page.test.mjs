@@ -98,8 +98,11 @@ test("crown and feet stand where the service says, at several Suns and over a sk
   await context.close();
 });
 
-test("the colours on the screen lie at the bow's radii, red outside", async () => {
-  const { page, context } = await openPage({ path: EQUATOR, deviceScaleFactor: 4, prepare: (p) => alter(p, "outlook", (o) => o.steps.forEach((s) => (s.chance = 1))) });
+test("without computed light the colours on the screen lie at the bow's radii, red outside", async () => {
+  const { page, context } = await openPage({ path: EQUATOR, deviceScaleFactor: 4, prepare: async (p) => {
+    await p.route("**/v1/light*", (r) => r.abort());
+    await alter(p, "outlook", (o) => o.steps.forEach((s) => (s.chance = 1)));
+  } });
   await waitForOutlook(page);
   const outlook = await outlookOf(page);
   const i = tellingSteps(outlook).middle;

@@ -1,9 +1,8 @@
 #!/usr/bin/env python3
 """Holds the optics against independent libraries over random input: miepython, scipy, iapws, colour-science.
 
-Run with the built example as argument: light.py target/release/examples/light_rows [--seed N] [--speed]
-Needs miepython, numba, scipy, iapws and colour-science (versions in tests/peers/requirements-light.txt).
-With --speed: the same spheres and angles as miepython's numba kernel on one core, as a ratio in one run.
+test_light.py runs the checks. By hand, with the built example as argument, for their figures or for the speed beside
+miepython's numba kernel on one core, as a ratio in one run: light.py target/release/examples/light_rows [--seed N | --speed]
 """
 import json
 import os
@@ -133,6 +132,9 @@ def beams(dice, program):
     return {"beam with another Rayleigh law, share of what it explains": (worst, 1.0)}
 
 
+CHECKS = (spheres, airy, water, colours, beams)
+
+
 def speed(program):
     angles = [120 + 0.075 * step for step in range(400)]
     cosines = np.cos(np.radians(angles))
@@ -158,7 +160,7 @@ def main():
     seed = int(sys.argv[sys.argv.index("--seed") + 1]) if "--seed" in sys.argv else random.SystemRandom().randrange(10**6)
     dice = random.Random(seed)
     bad = 0
-    for check in (spheres, airy, water, colours, beams):
+    for check in CHECKS:
         for name, (worst, allowed) in check(dice, program).items():
             good = worst <= allowed
             bad += not good

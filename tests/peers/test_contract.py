@@ -25,7 +25,7 @@ def is_utc(value):
 
 
 def references(node, within=False):
-    """Names of the schemas that are parts of an allOf: they are closed by what they are part of."""
+    """Names of the schemas that are parts of an allOf: they are closed by what they are part of, and so are their choices."""
     if isinstance(node, dict):
         if within and "$ref" in node:
             yield node["$ref"].rpartition("/")[2]
@@ -42,7 +42,10 @@ class Contract:
     def __init__(self, document):
         self.document = document
         closed = copy.deepcopy(document)
+        schemas = document["components"]["schemas"]
         parts = set(references(document))
+        while more := {name for part in parts for name in references({"allOf": schemas[part].get("oneOf", [])})} - parts:
+            parts |= more
         for name, schema in closed["components"]["schemas"].items():
             if name not in parts and ("properties" in schema or "allOf" in schema):
                 schema["unevaluatedProperties"] = False
@@ -115,6 +118,20 @@ def test_outlook(service, contract, rng):
         assert len(body["steps"]) == hours * 60 // step_min + 1
 
 
+def test_light(service, contract, rng):
+    for _ in range(60):
+        query = {"sun_elevation_deg": round(float(rng.uniform(-0.5, 90)), 2), "lit_optical_depth": round(float(10 ** rng.uniform(-3, 1.7)), 3)}
+        drops = [{}, {"rain_mm_h": round(float(10 ** rng.uniform(-1.3, 2.3)), 3)}, {"drop_radius_um": round(float(10 ** rng.uniform(0, 3.4)), 2)}]
+        drops += [{"fog": fog} for fog in ("radiation", "advection", "drizzle")]
+        query |= drops[rng.integers(len(drops))]
+        query |= [{}, {"wavelength_um": round(float(rng.uniform(0.4, 0.7)), 4)}][rng.integers(2)]
+        query |= [{}, {"water": "sea", "water_temperature_c": round(float(rng.uniform(0, 30)), 2)}][rng.integers(2)]
+        answer = service.get("/v1/light", query)
+        assert answer.status_code == 200, f"{answer.url}: {answer.text}"
+        body = contract.check("/v1/light", answer)
+        assert len(body["angle_deg"]) == 601 and ("phase_function" in body) == ("wavelength_um" in query)
+
+
 PLACE = {"lat": "50", "lon": "4"}
 BAD = [
     ({}, {"lat", "lon"}),
@@ -140,10 +157,22 @@ BAD_OUTLOOK = [
     (PLACE | {"feed": "nobody"}, {"feed"}),
 ]
 
+SUN = {"sun_elevation_deg": "20"}
+BAD_LIGHT = [
+    ({}, {"sun_elevation_deg"}),
+    ({"sun_elevation_deg": "-0.6"}, {"sun_elevation_deg"}),
+    (SUN | {"rain_mm_h": "0", "wavelength_um": "0.3", "lit_optical_depth": "0"}, {"rain_mm_h", "wavelength_um", "lit_optical_depth"}),
+    (SUN | {"drop_radius_um": "1e9"}, {"drop_radius_um"}),
+    (SUN | {"fog": "mist", "aerosol_optical_depth": "-1"}, {"fog", "aerosol_optical_depth"}),
+    (SUN | {"fog": "drizzle", "rain_mm_h": "1"}, {"fog"}),
+    (SUN | {"lat": "1"}, {"lat"}),
+]
+
 
 @pytest.mark.parametrize(
     "path, query, fields",
-    [("/v1/bow", *bad) for bad in BAD + BAD_BOW]
+    [("/v1/light", *bad) for bad in BAD_LIGHT]
+    + [("/v1/bow", *bad) for bad in BAD + BAD_BOW]
     + [("/v1/outlook", *bad) for bad in BAD + BAD_OUTLOOK]
     + [(path, {"lat": "1"}, {"lat"}) for path in ("/v1/sites", "/v1/feeds")],
 )

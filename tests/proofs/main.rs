@@ -27,5 +27,6 @@ mod reference_spheres;
 mod served;
 mod service_bow;
 mod service_conduct;
+mod service_light;
 mod service_outlook;
 mod table;

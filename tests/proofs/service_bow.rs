@@ -4,7 +4,7 @@ use proptest::prelude::*;
 use proptest::strategy::ValueTree;
 use proptest::test_runner::TestRunner;
 use rainward::bounds::{EYE_HEIGHT, LAT, LON, QUERY, TIME_MAX, TIME_MIN, WATER_TEMPERATURE};
-use rainward::service::{bow, outlook};
+use rainward::service::{bow, light, outlook};
 use serde_json::Value;
 
 use crate::served::Served;
@@ -100,6 +100,7 @@ async fn every_parameter_is_refused_by_name() {
     for (path, parameters, rest) in [
         ("/v1/bow", &bow::PARAMETERS[..], "lat=47&lon=-31"),
         ("/v1/outlook", &outlook::PARAMETERS[..], "lat=47&lon=-31&hours=1"),
+        ("/v1/light", &light::PARAMETERS[..], "sun_elevation_deg=20"),
     ] {
         for name in parameters {
             for value in &nonsense {

@@ -15,15 +15,20 @@ async fn the_document_lists_exactly_what_is_served() {
     let served = Served::demo().await;
     let document = served.get("/openapi.json").await.json();
     let paths: Vec<&str> = document["paths"].as_object().unwrap().keys().map(String::as_str).collect();
-    assert_eq!(paths, ["/healthz", "/readyz", "/v1/bow", "/v1/feeds", "/v1/outlook", "/v1/sites"]);
+    assert_eq!(paths, ["/healthz", "/readyz", "/v1/bow", "/v1/feeds", "/v1/light", "/v1/outlook", "/v1/sites"]);
     for path in paths {
-        let query = if path.contains("bow") || path.contains("outlook") { "?site=gull-stairs" } else { "" };
+        let query = match path {
+            "/v1/bow" | "/v1/outlook" => "?site=gull-stairs",
+            "/v1/light" => "?sun_elevation_deg=20",
+            _ => "",
+        };
         assert_eq!(served.get(&format!("{path}{query}")).await.status, 200, "{path}");
         assert_eq!(served.send(Method::POST, path, &[]).await.status, 405, "{path}");
     }
     for (path, parameters) in [
         ("/v1/bow", &rainward::service::bow::PARAMETERS[..]),
         ("/v1/outlook", &rainward::service::outlook::PARAMETERS[..]),
+        ("/v1/light", &rainward::service::light::PARAMETERS[..]),
     ] {
         let listed = document["paths"][path]["get"]["parameters"].as_array().unwrap();
         let mut names: Vec<&str> = listed.iter().map(|parameter| parameter["name"].as_str().unwrap()).collect();
@@ -31,8 +36,11 @@ async fn the_document_lists_exactly_what_is_served() {
         names.sort_unstable();
         known.sort_unstable();
         assert_eq!(names, known, "{path}");
-        let lat = listed.iter().find(|parameter| parameter["name"] == "lat").unwrap();
-        assert_eq!((&lat["schema"]["minimum"], &lat["schema"]["maximum"]), (&Value::from(-90.0), &Value::from(90.0)));
+        for range in rainward::bounds::QUERY {
+            let Some(one) = listed.iter().find(|parameter| parameter["name"] == range.name) else { continue };
+            let bounds = (&one["schema"]["minimum"], &one["schema"]["maximum"]);
+            assert_eq!(bounds, (&Value::from(range.min), &Value::from(range.max)), "{path}: {}", range.name);
+        }
     }
 }
 

@@ -21,7 +21,7 @@ pub struct LightAnswer {
     #[serde(flatten)]
     pub across: Across,
     /// Primary and secondary.
-    pub bows: Vec<Bow>,
+    pub bows: Vec<LitBow>,
     /// Number of supernumerary bows inside the primary that stand out by the threshold.
     pub supernumeraries: u32,
     /// Contrast from which a bow counts as seen.
@@ -35,18 +35,46 @@ pub struct LightAnswer {
 }
 
 /// The curve across the bows.
-#[derive(Debug, Clone, PartialEq, Default, Serialize, ToSchema)]
+#[derive(Debug, Clone, PartialEq, Serialize, ToSchema)]
 pub struct Across {
     /// Angle from the antisolar point, degrees: 30 to 60 in steps of 0.05.
     pub angle_deg: Vec<f64>,
     /// Degree of polarisation of the light scattered once in the drops: positive along the tangent of the bow.
     pub degree_of_polarisation: Vec<f64>,
-    /// Brightness and colour; absent for one wavelength.
+    /// Colours in white light, or the phase function in one wavelength.
     #[serde(flatten)]
-    pub colours: Option<Colours>,
-    /// Phase function (its mean over all directions 1) in the one wavelength; absent for white light.
-    #[serde(skip_serializing_if = "Option::is_none")]
-    pub phase_function: Option<Vec<f64>>,
+    pub light: AcrossIn,
+}
+
+impl Across {
+    /// Brightness and colour; none in one wavelength.
+    pub fn colours(&self) -> Option<&Colours> {
+        match &self.light {
+            AcrossIn::White(colours) => Some(colours),
+            AcrossIn::OneWavelength { .. } => None,
+        }
+    }
+
+    /// The phase function; none in white light.
+    pub fn phase_function(&self) -> Option<&[f64]> {
+        match &self.light {
+            AcrossIn::White(_) => None,
+            AcrossIn::OneWavelength { phase_function } => Some(phase_function),
+        }
+    }
+}
+
+/// What the curve tells besides, by the light asked for.
+#[derive(Debug, Clone, PartialEq, Serialize, ToSchema)]
+#[serde(untagged)]
+pub enum AcrossIn {
+    /// White light.
+    White(Colours),
+    /// One wavelength.
+    OneWavelength {
+        /// Phase function: its mean over all directions is 1.
+        phase_function: Vec<f64>,
+    },
 }
 
 /// Brightness and colour across the bows.
@@ -79,9 +107,9 @@ impl Colours {
     }
 }
 
-/// One bow.
+/// One bow in its light.
 #[derive(Debug, Clone, PartialEq, Serialize, ToSchema)]
-pub struct Bow {
+pub struct LitBow {
     /// Number of reflections in the drop: 1 the primary, 2 the secondary.
     pub order: u32,
     /// Angle of the stationary ray from the antisolar point, degrees: at 0.55 µm in white light.
@@ -112,7 +140,7 @@ pub struct Polariser {
 }
 
 impl Polariser {
-    pub(super) fn new(sun_elevation_deg: f64, primary: &Bow) -> Self {
+    pub(super) fn new(sun_elevation_deg: f64, primary: &LitBow) -> Self {
         let degree = primary.degree_of_polarisation.unwrap_or(0.0);
         let radius_deg = primary.brightest_deg.unwrap_or(primary.radius_deg);
         // At a foot the tangent leans from the vertical toward the crown by F, sin F = sin h/sin ρ.

@@ -21,6 +21,12 @@ pub enum Fog {
     Drizzle,
 }
 
+impl Fog {
+    /// Every kind by its name.
+    pub const NAMES: [(&str, Self); 3] =
+        [("radiation", Self::Radiation), ("advection", Self::Advection), ("drizzle", Self::Drizzle)];
+}
+
 /// The drops, in the words of the question.
 #[derive(Debug, Clone, Copy, PartialEq, Serialize, ToSchema)]
 #[serde(rename_all = "snake_case")]
@@ -139,10 +145,14 @@ impl Asked {
             let detail = format!("{name} is missing: it must lie between {min} and {max} {unit}");
             refused.push(Refused { field: name, detail });
         }
-        let kinds = [self.rain_mm_h.is_some(), self.drop_radius_um.is_some(), self.fog.is_some()];
-        if kinds.into_iter().filter(|given| *given).count() > 1 {
+        let kinds = [
+            (bounds::RAIN.name, self.rain_mm_h.is_some()),
+            (bounds::DROP_RADIUS.name, self.drop_radius_um.is_some()),
+            ("fog", self.fog.is_some()),
+        ];
+        for (field, _) in kinds.into_iter().filter(|kind| kind.1).skip(1) {
             let detail = "only one of rain_mm_h, drop_radius_um and fog can be given".to_owned();
-            refused.push(Refused { field: "rain_mm_h", detail });
+            refused.push(Refused { field, detail });
         }
         if refused.is_empty() { Ok(question) } else { Err(refused) }
     }

@@ -24,9 +24,9 @@ impl Measured {
     pub fn new(angles_deg: &[f64], curve: &[f64], radii: [f64; 2]) -> Self {
         // Light is brightest inside the primary's ray and outside the secondary's.
         let split = angles_deg.partition_point(|angle| *angle < f64::midpoint(radii[0], radii[1]));
-        let primary = peak(curve, 0, split);
-        let secondary = peak(curve, split, curve.len());
-        let Some(primary) = primary else { return Self { bows: [None, None], supernumeraries: 0 } };
+        let Some(primary) = peak(curve, 0, split) else { return Self { bows: [None, None], supernumeraries: 0 } };
+        let ray = angles_deg.partition_point(|angle| *angle < radii[1]).min(curve.len() - 1);
+        let secondary = peak(curve, least(curve, primary, ray), curve.len());
         let band = least(curve, primary, secondary.unwrap_or(curve.len() - 1));
         let found = |index: usize| {
             let half = f64::midpoint(curve[index], curve[band]);

@@ -9,7 +9,7 @@ pub mod asked;
 mod measure;
 mod words;
 
-use self::answer::{Across, Bow, Colours, LightAnswer, Polariser};
+use self::answer::{Across, AcrossIn, Colours, LightAnswer, LitBow, Polariser};
 use self::asked::Question;
 use self::measure::Measured;
 use super::beam::{AEROSOL_WAVELENGTH_UM, Beam};
@@ -48,6 +48,14 @@ impl Prepared {
         let light = Scatterer::new(question.drops.sizes(), Light::OneWavelength).under_the_sun(wavelength_um, n)?;
         Ok(Self::One(light.iter().map(|at| (at.mean(), at.degree())).collect()))
     }
+
+    /// Memory held, bytes.
+    pub fn size_bytes(&self) -> usize {
+        match self {
+            Self::White(curves) => curves.size_bytes(),
+            Self::One(curve) => size_of_val(curve.as_slice()),
+        }
+    }
 }
 
 /// The answer to a question, by what was prepared for its drops, water and wavelength; some 0.2 ms.
@@ -60,11 +68,7 @@ pub fn answer(question: &Question, prepared: &Prepared) -> LightAnswer {
         Scene::new(view, sunlight, behind)
     };
     let illuminance = beam.xyz();
-    let mut across = Across {
-        angle_deg: (0..ANGLES).map(|index| round(30.0 + FINE.step_deg * index as f64, 2)).collect(),
-        ..Across::default()
-    };
-    let curve = match prepared {
+    let (light, degree_of_polarisation, curve) = match prepared {
         Prepared::White(curves) => {
             let above = colour::xyz_of_sunlight(|_| 1.0);
             let scenes: [Scene; 3] = std::array::from_fn(|axis| lights(illuminance[axis], above[axis]));
@@ -73,31 +77,35 @@ pub fn answer(question: &Question, prepared: &Prepared) -> LightAnswer {
             let total: Vec<[f64; 3]> = (0..ANGLES)
                 .map(|index| std::array::from_fn(|axis| per_lux * seen[told(index)].xyz[axis] + scenes[axis].veil()))
                 .collect();
-            across.degree_of_polarisation =
-                (0..ANGLES).map(|index| round(seen[told(index)].degree_of_polarisation, 4)).collect();
-            across.colours = Some(Colours::new(&total, scenes[1].behind));
-            total.iter().map(|xyz| xyz[1]).collect::<Vec<f64>>()
+            let degrees = (0..ANGLES).map(|index| round(seen[told(index)].degree_of_polarisation, 4)).collect();
+            let luminance = total.iter().map(|xyz| xyz[1]).collect::<Vec<f64>>();
+            (AcrossIn::White(Colours::new(&total, scenes[1].behind)), degrees, luminance)
         }
         Prepared::One(curve) => {
             let wavelength_um = question.wavelength_um.unwrap_or(AEROSOL_WAVELENGTH_UM);
             let above = SPECTRUM[((wavelength_um * 1000.0).round() as usize).clamp(360, 830) - 360].sunlight_w_m2_nm;
             let scene = lights(above * beam.transmittance(wavelength_um), above);
-            across.degree_of_polarisation = (0..ANGLES).map(|index| round(curve[told(index)].1, 4)).collect();
-            let phase: Vec<f64> = (0..ANGLES).map(|index| curve[told(index)].0).collect();
-            let total = phase.iter().map(|phase| scene.per_phase * phase + scene.veil()).collect();
-            across.phase_function = Some(phase.iter().map(|phase| round(*phase, 6)).collect());
-            total
+            let degrees: Vec<f64> = (0..ANGLES).map(|index| round(curve[told(index)].1, 4)).collect();
+            let phase = (0..ANGLES).map(|index| curve[told(index)].0);
+            let total = phase.clone().map(|phase| scene.per_phase * phase + scene.veil()).collect();
+            let phase_function = phase.map(|phase| round(phase, 6)).collect();
+            (AcrossIn::OneWavelength { phase_function }, degrees, total)
         }
+    };
+    let across = Across {
+        angle_deg: (0..ANGLES).map(|index| round(30.0 + FINE.step_deg * index as f64, 2)).collect(),
+        degree_of_polarisation,
+        light,
     };
     let wavelength_um = question.wavelength_um.unwrap_or(AEROSOL_WAVELENGTH_UM);
     let n = question.water.index_in_air(wavelength_um, question.water_temperature_c);
     let radii = [1, 2].map(|order| ray::radius_deg(n, order).unwrap_or(f64::NAN));
     let measured = Measured::new(&across.angle_deg, &curve, radii);
-    let bows: Vec<Bow> = [1, 2]
+    let bows: Vec<LitBow> = [1, 2]
         .into_iter()
         .zip(measured.bows)
         .zip(radii)
-        .map(|((order, bow), radius_deg)| Bow {
+        .map(|((order, bow), radius_deg)| LitBow {
             order,
             radius_deg: round(radius_deg, 4),
             brightest_deg: bow.map(|bow| round(bow.brightest_deg, 2)),

@@ -1,12 +1,15 @@
 //! What to expect, in words.
 
-use super::answer::Bow;
+use super::answer::LitBow;
 use super::asked::{AskedDrops, Question};
 use crate::optics::scene::{BEHIND_REFLECTANCE, SEEN_FROM};
 use crate::optics::water::Water;
 
+/// Elevation of the Sun under which little but red is left of a bow.
+const RED_BELOW_DEG: f64 = 2.0;
+
 /// A few sentences on the bow.
-pub(super) fn expect(question: &Question, bows: &[Bow], supernumeraries: u32) -> String {
+pub(super) fn expect(question: &Question, bows: &[LitBow], supernumeraries: u32) -> String {
     let [primary, secondary] = bows else { return String::new() };
     if primary.brightest_deg.is_none() {
         return "Drops this small make no bow between 30 and 60 degrees from the antisolar point.".to_owned();
@@ -27,7 +30,8 @@ pub(super) fn expect(question: &Question, bows: &[Bow], supernumeraries: u32) ->
         sentences.push("The Sun is too high: on level ground the bow lies below the horizon.".to_owned());
     }
     if primary.contrast >= SEEN_FROM {
-        let coloured = question.wavelength_um.is_none() && !broad(primary);
+        let coloured =
+            question.wavelength_um.is_none() && !broad(primary) && question.sun_elevation_deg >= RED_BELOW_DEG;
         sentences.push(match secondary.contrast {
             ..SEEN_FROM => "The secondary will hardly show.".to_owned(),
             _ if coloured => "The secondary shows too, its colours reversed, with a darker band between.".to_owned(),
@@ -38,20 +42,24 @@ pub(super) fn expect(question: &Question, bows: &[Bow], supernumeraries: u32) ->
             1 => sentences.push("One supernumerary bow inside the primary.".to_owned()),
             many => sentences.push(format!("{many} supernumerary bows inside the primary.")),
         }
-        sentences.push(
-            "A polarising filter strengthens the bow with its axis along the arc and nearly wipes it out across it."
-                .to_owned(),
-        );
+        let across = match primary.degree_of_polarisation.unwrap_or(0.0) {
+            ..0.5 => "weakens it a little",
+            ..0.8 => "weakens it much",
+            _ => "nearly wipes it out",
+        };
+        sentences.push(format!(
+            "A polarising filter strengthens the bow with its axis along the arc and {across} with its axis across it."
+        ));
     }
     sentences.join(" ")
 }
 
-fn colours(question: &Question, primary: &Bow) -> &'static str {
+fn colours(question: &Question, primary: &LitBow) -> &'static str {
     if question.wavelength_um.is_some() {
         "in one colour"
     } else if broad(primary) {
         "broad and nearly white"
-    } else if question.sun_elevation_deg < 2.0 {
+    } else if question.sun_elevation_deg < RED_BELOW_DEG {
         "red, with little else"
     } else if question.sun_elevation_deg < 6.0 {
         "mostly red and orange, weak in blue"
@@ -61,7 +69,7 @@ fn colours(question: &Question, primary: &Bow) -> &'static str {
 }
 
 /// Fog bows are: their colours overlap to white.
-fn broad(primary: &Bow) -> bool {
+fn broad(primary: &LitBow) -> bool {
     primary.width_deg.is_none_or(|width| width > 3.5)
 }
 
