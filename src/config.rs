@@ -152,7 +152,7 @@ pub fn read(text: &str, environment: Env) -> Result<Config, ConfigError> {
 /// The known name that is most like an unknown one, where one is like it at all.
 pub fn nearest<'a>(name: &str, known: &[&'a str]) -> Option<&'a str> {
     let likeness = |known: &str| strsim::jaro_winkler(name, known);
-    known.iter().copied().max_by(|a, b| likeness(a).total_cmp(&likeness(b))).filter(|best| likeness(best) > 0.7)
+    known.iter().copied().max_by(|a, b| likeness(a).total_cmp(&likeness(b))).filter(|best| likeness(best) > 0.65)
 }
 
 fn describe(error: &figment::Error) -> String {

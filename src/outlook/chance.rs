@@ -139,7 +139,8 @@ impl<'a> Weather<'a> {
         let freezing_km = km(Quantity::FreezingLevel)
             .map(|above_sea| above_sea - self.ground_km)
             .or_else(|| temperature_c.map(|temperature| temperature / LAPSE_K_PER_KM));
-        let cloud_base_km = km(Quantity::CloudBase).unwrap_or(CLOUD_BASE_KM).max(0.05);
+        let below_base_km = if self.scene.cloud_base_above_sea() { self.ground_km } else { 0.0 };
+        let cloud_base_km = km(Quantity::CloudBase).map_or(CLOUD_BASE_KM, |base| base - below_base_km).max(0.05);
         Overhead {
             visual_range_km: km(Quantity::Visibility).unwrap_or(FARTHEST_KM),
             cloud_base_km,

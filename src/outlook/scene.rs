@@ -103,6 +103,11 @@ impl<'a> Scene<'a> {
         Look { scene: self, series, time_s, bracket: series.times.bracket(time_s), lag_s_per_km }
     }
 
+    /// Whether the field tells cloud bases above the sea rather than above the ground.
+    pub fn cloud_base_above_sea(&self) -> bool {
+        self.field.cloud_base_above_sea
+    }
+
     /// The values of a quantity, where the field has it.
     pub fn series(&self, quantity: Quantity) -> Option<&'a Series> {
         self.field.series(quantity)

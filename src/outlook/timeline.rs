@@ -38,9 +38,9 @@ pub struct Ask {
 }
 
 /// The outlook for an observer. Without a field, or where it does not say, geometry still answers and the chance is null.
-/// `fetched` stands in for the time of issue where the document does not tell it.
-pub fn outlook(ask: &Ask, field: Option<&Field>, fetched: Option<DateTime<Utc>>) -> Outlook {
-    let issued = field.and_then(|field| field.issued).or(fetched).unwrap_or(ask.from);
+/// `first_seen` stands in for the time of issue where the document does not tell it.
+pub fn outlook(ask: &Ask, field: Option<&Field>, first_seen: Option<DateTime<Utc>>) -> Outlook {
+    let issued = field.and_then(|field| field.issued).or(first_seen).unwrap_or(ask.from);
     let weather = field.and_then(|field| Weather::new(field, &ask.observer, issued.timestamp()));
     let step_ms = ask.step.num_milliseconds().max(1);
     let steps: Vec<Step> = (0..=ask.length.num_milliseconds() / step_ms)
@@ -175,7 +175,7 @@ pub fn assumed(field: &Field, ask: &Ask) -> Vec<Assumption> {
         }
     }
     if field.issued.is_none() {
-        say("issued", "no time of issue given: the forecast's error grows from the time it was fetched".into());
+        say("issued", "no time of issue given: the forecast's error grows from the time it was first seen".into());
     }
     say(
         "copies",

@@ -268,7 +268,7 @@ async fn weather(app: &App, question: &Question) -> (Option<FeedEcho>, Option<Do
 fn assemble(question: &Question, feed: Option<FeedEcho>, document: Option<&Document>) -> Option<OutlookAnswer> {
     let radii = |order| Radii::of(order, question.water, question.water_temperature_c);
     let field = document.map(|document| document.field.as_ref());
-    let mut outlook = compute(&question.ask, field, document.map(|document| document.fetched));
+    let mut outlook = compute(&question.ask, field, document.map(|document| document.first_seen));
     if question.water == Water::Sea {
         let text = "the bow's radius is that of sea water, its prominence that of rain".into();
         outlook.assumed.push(Assumption { value: "water", text });

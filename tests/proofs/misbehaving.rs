@@ -163,7 +163,7 @@ pub fn spec(url: &str) -> FeedSpec {
         "name": "coast",
         "url": url,
         "format": "json",
-        "timeout_s": 1,
+        "timeout_s": 3,
         "max_bytes": 100_000,
         "headers": {"X-Key": "${KEY}"},
         "json": {"time": "/t", "values": {

@@ -55,7 +55,7 @@ const REAL: [Real; 8] = [
             values.rain = { at = "/data/precipitation_amount_mean", unit = "kg.m-2", since = "/intervalParametersStartTime" }
             values.rain_chance = { at = "/data/probability_of_precipitation", unit = "%" }
             values.cloud_low = { at = "/data/low_type_cloud_area_fraction", unit = "{okta}" }
-            values.cloud_base = { at = "/data/cloud_base_altitude", unit = "m", missing = [9999] }
+            values.cloud_base = { at = "/data/cloud_base_altitude", unit = "m", missing = [9999], above = "sea" }
             values.temperature = { at = "/data/air_temperature", unit = "Cel" }
             values.visibility = { at = "/data/visibility_in_air", unit = "km" }
             values.wind_speed = { at = "/data/wind_speed", unit = "m/s" }
