@@ -132,6 +132,18 @@ pub const REFRESH: Range = Range::real("refresh_min", 1.0, 1440.0, "min");
 pub const TIMEOUT: Range = Range::real("timeout_s", 1.0, 120.0, "s");
 /// Size limit of a feed's document, after decompression.
 pub const MAX_BYTES: Range = Range::whole("max_bytes", 1000.0, 1.0e9, "bytes");
+/// Connections open at once.
+pub const CONNECTIONS: Range = Range::whole("connections", 1.0, 1.0e6, "");
+/// Requests answered at once.
+pub const REQUESTS: Range = Range::whole("requests", 1.0, 1.0e6, "");
+/// Longest time for one answer.
+pub const REQUEST_TIME: Range = Range::whole("request_s", 1.0, 3600.0, "s");
+/// Longest request body.
+pub const BODY: Range = Range::whole("body_bytes", 0.0, 1.0e9, "bytes");
+/// Memory for weather documents.
+pub const DOCUMENTS: Range = Range::whole("documents_mb", 1.0, 1.0e6, "MB");
+/// Memory for finished answers.
+pub const ANSWERS: Range = Range::whole("answers_mb", 1.0, 1.0e6, "MB");
 /// Period over which an accumulated value was gathered.
 pub const OVER_MIN: Range = Range::real("over_min", 1.0, 1440.0, "min");
 

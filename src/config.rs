@@ -10,7 +10,9 @@ use figment::providers::{Env, Format as _, Toml};
 use serde::Deserialize;
 use thiserror::Error;
 
-use crate::bounds::{EYE_HEIGHT, GROUND, LAT, LON, Place};
+use crate::bounds::{
+    ANSWERS, BODY, CONNECTIONS, DOCUMENTS, EYE_HEIGHT, GROUND, LAT, LON, Place, REQUEST_TIME, REQUESTS,
+};
 use crate::sky::horizon::Skyline;
 use crate::sky::observer::Observer;
 use crate::weather::spec::FeedSpec;
@@ -139,7 +141,7 @@ pub fn load(file: Option<&Path>) -> Result<Config, ConfigError> {
 /// Reads a configuration from text and a layer of environment variables.
 ///
 /// # Errors
-/// [`ConfigError`] with every problem found.
+/// [`ConfigError`] with every problem found; of values of a wrong type and unknown keys only the first.
 pub fn read(text: &str, environment: Env) -> Result<Config, ConfigError> {
     let layers = Figment::from(Toml::string(DEFAULTS)).merge(Toml::string(text)).merge(environment);
     let raw: Raw =
@@ -147,16 +149,21 @@ pub fn read(text: &str, environment: Env) -> Result<Config, ConfigError> {
     check(raw).map_err(ConfigError)
 }
 
+/// The known name that is most like an unknown one, where one is like it at all.
+pub fn nearest<'a>(name: &str, known: &[&'a str]) -> Option<&'a str> {
+    let likeness = |known: &str| strsim::jaro_winkler(name, known);
+    known.iter().copied().max_by(|a, b| likeness(a).total_cmp(&likeness(b))).filter(|best| likeness(best) > 0.7)
+}
+
 fn describe(error: &figment::Error) -> String {
     let path = error.path.join(".");
     let at = if path.is_empty() { String::new() } else { format!("{path}: ") };
-    let nearest = |name: &str, known: &[&'static str]| {
-        let best = known.iter().max_by(|a, b| strsim::jaro(name, a).total_cmp(&strsim::jaro(name, b)));
-        best.map_or_else(String::new, |best| format!("; did you mean `{best}`?"))
+    let hint = |name: &str, known: &[&'static str]| {
+        nearest(name, known).map_or_else(String::new, |best| format!("; did you mean `{best}`?"))
     };
     match &error.kind {
-        Kind::UnknownField(name, known) => format!("{at}unknown key `{name}`{}", nearest(name, known)),
-        Kind::UnknownVariant(name, known) => format!("{at}unknown word `{name}`{}", nearest(name, known)),
+        Kind::UnknownField(name, known) => format!("{at}unknown key `{name}`{}", hint(name, known)),
+        Kind::UnknownVariant(name, known) => format!("{at}unknown word `{name}`{}", hint(name, known)),
         Kind::MissingField(name) => format!("{at}missing key `{name}`"),
         kind => format!("{at}{kind}"),
     }
@@ -168,17 +175,18 @@ fn check(raw: Raw) -> Result<Config, Vec<String>> {
     if listen.is_err() {
         problems.push(format!("listen: {:?} is not an address with a port, such as 127.0.0.1:8080", raw.listen));
     }
-    for (key, value) in [
-        ("connections", raw.limits.connections as u64),
-        ("requests", raw.limits.requests as u64),
-        ("request_s", raw.limits.request_s),
-        ("documents_mb", raw.limits.documents_mb),
-        ("answers_mb", raw.limits.answers_mb),
+    let limits = &raw.limits;
+    for (range, value) in [
+        (CONNECTIONS, limits.connections as u64),
+        (REQUESTS, limits.requests as u64),
+        (REQUEST_TIME, limits.request_s),
+        (BODY, limits.body_bytes as u64),
+        (DOCUMENTS, limits.documents_mb),
+        (ANSWERS, limits.answers_mb),
     ] {
-        if value == 0 {
-            problems.push(format!("limits.{key}: must be at least 1"));
-        }
+        problems.extend(range.check(value as f64).err().map(|error| format!("limits.{}: {error}", range.name)));
     }
+    problems.extend(log_problem(&raw.log.level).map(|problem| format!("log.level: {problem}")));
     let mut names = HashSet::new();
     let sites = raw.sites.into_iter().enumerate().filter_map(|(index, raw)| {
         let at = format!("sites.{index}");
@@ -202,6 +210,13 @@ fn check(raw: Raw) -> Result<Config, Vec<String>> {
         }
         _ => Err(problems),
     }
+}
+
+/// A bare word of a filter that is no level would be taken for the name of a module and silence the log.
+fn log_problem(level: &str) -> Option<String> {
+    let levels = ["off", "error", "warn", "info", "debug", "trace"];
+    let word = level.split(',').map(str::trim).find(|part| !part.contains('=') && !levels.contains(part))?;
+    Some(format!("{word:?} must be one of {}, or a filter such as rainward=debug,info", levels.join(", ")))
 }
 
 fn name_problem(name: &str, taken: &mut HashSet<String>) -> Option<String> {

@@ -10,7 +10,7 @@ use rainward::service::query::Query;
 use rainward::sky::observer::Observer;
 use rainward::weather::feeds::{CheckQuantity, CheckReport, CheckSpace};
 
-use super::print_problem;
+use super::{print_problem, say};
 
 /// Exit code when the document could not be fetched or read.
 const NOT_READ: u8 = 3;
@@ -60,7 +60,7 @@ pub async fn run(app: &App, arguments: Arguments) -> ExitCode {
     };
     if json {
         match serde_json::to_string_pretty(&report) {
-            Ok(text) => println!("{text}"),
+            Ok(text) => say!("{text}"),
             Err(error) => eprintln!("rainward: {error}"),
         }
     } else {
@@ -70,41 +70,48 @@ pub async fn run(app: &App, arguments: Arguments) -> ExitCode {
 }
 
 fn print(report: &CheckReport, observer: Observer) {
-    println!("Feed {} at {}", report.feed, report.host);
+    say!("Feed {} at {}", report.feed, report.host);
     let status = report.status.map_or_else(|| "no answer".into(), |status| format!("HTTP {status}"));
     let bytes = report.bytes.map_or_else(String::new, |bytes| format!(", {bytes} bytes"));
     let kind = report.content_type.as_deref().map_or_else(String::new, |kind| format!(", {kind}"));
-    println!("Answer: {}{bytes}{kind}", if report.host.starts_with("demo") { "made here".into() } else { status });
+    say!("Answer: {}{bytes}{kind}", if report.host.starts_with("demo") { "made here".into() } else { status });
     if let Some(error) = &report.error {
-        println!("NOT READ: {error}");
+        say!("NOT READ: {error}");
         return;
     }
-    println!("Issued: {}", report.issued.map_or_else(|| "not given".into(), moment));
+    say!("Issued: {}", report.issued.map_or_else(|| "not given".into(), moment));
     match &report.space {
-        Some(CheckSpace::Point { lat, lon }) if report.located => println!("Place: {lat}, {lon}"),
-        Some(CheckSpace::Point { lat, lon }) => println!("Place: not given; taken as asked: {lat}, {lon}"),
+        Some(CheckSpace::Point { lat, lon }) if report.located => say!("Place: {lat}, {lon}"),
+        Some(CheckSpace::Point { lat, lon }) => say!("Place: not given; taken as asked: {lat}, {lon}"),
         Some(CheckSpace::Grid { south, west, north, east, rows, columns }) => {
-            println!("Grid: {rows} x {columns}, latitude {south} to {north}, longitude {west} to {east}");
+            say!("Grid: {rows} x {columns}, latitude {south} to {north}, longitude {west} to {east}");
         }
         None => {}
     }
-    println!();
-    println!(
+    say!("");
+    say!(
         "{:<15} {:>9} {:>5}  {:<36}  {:>6} {:>7}  {:>9} {:>9}",
-        "value", "read as", "kept", "UTC", "count", "missing", "least", "most"
+        "value",
+        "read as",
+        "kept",
+        "UTC",
+        "count",
+        "missing",
+        "least",
+        "most"
     );
     for quantity in &report.quantities {
-        println!("{}", row(quantity));
+        say!("{}", row(quantity));
         if let Some(Some((start, end))) = quantity.gaps.first().map(|gap| gap.start.zip(gap.end)) {
             let count = quantity.gaps.len();
-            println!("{:<15} gaps: {count}, the first from {} to {}", "", moment(start), moment(end));
+            say!("{:<15} gaps: {count}, the first from {} to {}", "", moment(start), moment(end));
         }
     }
-    println!();
+    say!("");
     let absent: Vec<&str> = report.absent.iter().map(|quantity| quantity.name()).collect();
-    println!("Not given: {}", if absent.is_empty() { "nothing".into() } else { absent.join(", ") });
+    say!("Not given: {}", if absent.is_empty() { "nothing".into() } else { absent.join(", ") });
     for note in &report.notes {
-        println!("Note: {note}");
+        say!("Note: {note}");
     }
     if let Some(field) = &report.field {
         let (first, last) = field.extent().unwrap_or_default();
@@ -112,7 +119,7 @@ fn print(report: &CheckReport, observer: Observer) {
         let (length, step) = (TimeDelta::seconds(last - first), TimeDelta::hours(1));
         let ask = Ask { observer, from, length, step, threshold: 0.0, radius_deg: 42.0 };
         for assumption in assumed(field, &ask) {
-            println!("The outlook will assume: {}", assumption.text);
+            say!("The outlook will assume: {}", assumption.text);
         }
     }
 }

@@ -17,3 +17,20 @@ pub fn print_problem(problem: Problem) {
         other => eprintln!("rainward: {other:?}"),
     }
 }
+
+/// Prints a line to standard output; when nobody reads on, as in `rainward … | head`, the rest is left out.
+pub fn emit(line: std::fmt::Arguments<'_>) {
+    use std::io::Write;
+    let mut out = std::io::stdout().lock();
+    if let Err(error) = writeln!(out, "{line}").and_then(|()| out.flush())
+        && error.kind() != std::io::ErrorKind::BrokenPipe
+    {
+        eprintln!("rainward: cannot print: {error}");
+    }
+}
+
+/// `println!` that survives a closed pipe.
+macro_rules! say {
+    ($($words:tt)*) => { $crate::command::emit(format_args!($($words)*)) };
+}
+pub(crate) use say;

@@ -8,11 +8,11 @@ use rainward::service::App;
 use rainward::service::outlook::{OutlookAnswer, Question, answer};
 use rainward::service::query::Query;
 
-use super::print_problem;
+use super::{print_problem, say};
 
 /// Exit code when no window was found.
 const NO_WINDOW: u8 = 1;
-/// Exit code when the feed gave no weather.
+/// Exit code when the feed gave no weather, or none of the time and place asked for.
 const NO_WEATHER: u8 = 3;
 
 /// The question; every option is checked like the parameter of the same name in the API.
@@ -95,7 +95,7 @@ pub async fn run(app: &App, arguments: Arguments) -> ExitCode {
     };
     if json {
         match serde_json::to_string(&answer) {
-            Ok(text) => println!("{text}"),
+            Ok(text) => say!("{text}"),
             Err(error) => eprintln!("rainward: {error}"),
         }
     } else {
@@ -108,41 +108,52 @@ pub async fn run(app: &App, arguments: Arguments) -> ExitCode {
         eprintln!("rainward: no weather: {reason}");
         return ExitCode::from(NO_WEATHER);
     }
-    if answer.outlook.windows.is_empty() { ExitCode::from(NO_WINDOW) } else { ExitCode::SUCCESS }
+    if !answer.outlook.windows.is_empty() {
+        return ExitCode::SUCCESS;
+    }
+    let steps = &answer.outlook.steps;
+    let unknown = steps.iter().filter(|step| step.limited_by == Some(Limit::NoData)).count();
+    if unknown > 0 {
+        eprintln!("rainward: the feed says nothing of {unknown} of {} steps", steps.len());
+    }
+    let judged = steps.iter().any(|step| !geometric(step) && step.chance.is_some());
+    if unknown > 0 && !judged { ExitCode::from(NO_WEATHER) } else { ExitCode::from(NO_WINDOW) }
+}
+
+/// Whether Sun and horizon alone forbid a bow.
+fn geometric(step: &Step) -> bool {
+    matches!(step.limited_by, Some(Limit::SunDown | Limit::SunTooHigh | Limit::Skyline))
 }
 
 fn print(answer: &OutlookAnswer, label: Option<&str>) {
     let (lat, lon) = (answer.observer.lat, answer.observer.lon);
     let (ns, ew) = (if lat < 0.0 { 'S' } else { 'N' }, if lon < 0.0 { 'W' } else { 'E' });
     let place = format!("{:.3} {ns} {:.3} {ew}", lat.abs(), lon.abs());
-    println!("{}", label.map_or_else(|| place.clone(), |label| format!("{label}, {place}")));
+    say!("{}", label.map_or_else(|| place.clone(), |label| format!("{label}, {place}")));
     if let Some(feed) = &answer.feed {
         let age = feed.age_s.map_or_else(|| "no document".into(), |age_s| format!("{} min old", age_s / 60));
-        println!("Feed {}, {age}{}", feed.name, if feed.stale && feed.document.is_some() { ", STALE" } else { "" });
+        say!("Feed {}, {age}{}", feed.name, if feed.stale && feed.document.is_some() { ", STALE" } else { "" });
     }
     let steps = &answer.outlook.steps;
     if let (Some(first), Some(last)) = (steps.first(), steps.last()) {
-        println!("{} to {} UTC", first.time.format("%a %e %b %Y %H:%M"), last.time.format("%a %e %b %Y %H:%M"));
+        say!("{} to {} UTC", first.time.format("%a %e %b %Y %H:%M"), last.time.format("%a %e %b %Y %H:%M"));
     }
-    println!();
+    say!("");
     if answer.outlook.windows.is_empty() {
-        println!("No window with a chance of {} or more.", answer.threshold);
+        say!("No window with a chance of {} or more.", answer.threshold);
     } else {
-        println!(
-            "{:<11} {:>5}  {:>5}  {:>5}  {:>5}  {:>5}  {:>6}",
-            "UTC", "from", "to", "face", "crown", "arc", "chance"
-        );
+        say!("{:<11} {:>5}  {:>5}  {:>5}  {:>5}  {:>5}  {:>6}", "UTC", "from", "to", "face", "crown", "arc", "chance");
         for window in &answer.outlook.windows {
-            println!("{}", row(window));
+            say!("{}", row(window));
         }
     }
-    println!();
-    println!("Otherwise: {}.", reasons(steps, answer.threshold));
+    say!("");
+    say!("Otherwise: {}.", reasons(steps, answer.threshold));
     for assumption in &answer.outlook.assumed {
-        println!("Assumed: {}", assumption.text);
+        say!("Assumed: {}", assumption.text);
     }
     for caution in &answer.outlook.cautions {
-        println!("Caution: {caution}");
+        say!("Caution: {caution}");
     }
 }
 
@@ -171,7 +182,8 @@ fn reasons(steps: &[Step], threshold: f64) -> String {
         (Limit::TooFaint, "too faint"),
         (Limit::NoData, "weather unknown"),
     ];
-    let outside: Vec<&Step> = steps.iter().filter(|step| step.chance.is_none_or(|chance| chance < threshold)).collect();
+    let good = |chance: f64| chance > 0.0 && chance >= threshold;
+    let outside: Vec<&Step> = steps.iter().filter(|step| !step.chance.is_some_and(good)).collect();
     let mut counted: Vec<(usize, &str)> = all
         .iter()
         .map(|(limit, words)| (outside.iter().filter(|step| step.limited_by == Some(*limit)).count(), *words))

@@ -10,6 +10,8 @@ use tokio::signal::unix::{SignalKind, signal};
 use tracing_subscriber::EnvFilter;
 use tracing_subscriber::filter::ParseError;
 
+use super::say;
+
 /// Starts the log on standard error.
 ///
 /// # Errors
@@ -44,15 +46,15 @@ pub async fn run(app: App, demo: bool) -> ExitCode {
         }
     };
     let at = listener.local_addr().unwrap_or(listen);
-    println!("rainward looks out at http://{at}/");
+    say!("rainward looks out at http://{at}/");
     if demo {
-        println!("  This is the built-in demo: an invented coast under invented showers. Your own: --config FILE");
+        say!("  This is the built-in demo: an invented coast under invented showers. Your own: --config FILE");
     }
     if let Some(site) = app.config().sites.first() {
-        println!("  bow now    http://{at}/v1/bow?site={}", site.name);
-        println!("  outlook    http://{at}/v1/outlook?site={}", site.name);
+        say!("  bow now    http://{at}/v1/bow?site={}", site.name);
+        say!("  outlook    http://{at}/v1/outlook?site={}", site.name);
     }
-    println!("  all there  http://{at}/openapi.json");
+    say!("  all there  http://{at}/openapi.json");
     serve(listener, app, async move {
         tokio::select! {
             _ = terminated.recv() => {}

@@ -128,7 +128,7 @@ pub struct Bow {
     pub feet: Option<Feet>,
     /// Share of the full circle over the horizon in use, 0..1.
     pub visible_arc_fraction: f64,
-    /// Whether any of it stands over the horizon in use.
+    /// Whether any of it stands over the horizon in use, by geometry, whether or not the Sun is out.
     pub above_horizon: bool,
     /// By how many degrees the bow's best point stays below the horizon in use; null where some of it stands over it.
     pub below_horizon_by_deg: Option<f64>,
@@ -176,6 +176,7 @@ pub const PARAMETERS: [&str; 7] = ["site", "lat", "lon", "eye_height_m", "time",
     responses(
         (status = 200, description = "Sun and bows", body = BowAnswer),
         (status = 400, description = "parameters that cannot be used", body = ProblemBody, content_type = "application/problem+json"),
+        (status = 503, description = "too many requests at once, or too slow", body = ProblemBody, content_type = "application/problem+json"),
     )
 )]
 pub(super) async fn bow(

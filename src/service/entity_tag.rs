@@ -1,4 +1,5 @@
-//! Entity tags: an answer that the client already has is not sent again.
+//! Entity tags: an answer that the client already has is not sent again. They are weak: packed or not, an answer has one
+//! tag (RFC 9110, 8.8.1).
 
 use axum::body::Body;
 use axum::extract::Request;
@@ -25,7 +26,7 @@ pub(super) async fn entity_tag(request: Request, next: Next) -> Response {
         Ok(body) => body.to_bytes(),
         Err(error) => return Problem::Internal(format!("an answer broke off: {error}")).into_response(),
     };
-    let Ok(tag) = format!("\"{:032x}\"", xxh3_128(&bytes)).parse::<ETag>() else {
+    let Ok(tag) = format!("W/\"{:032x}\"", xxh3_128(&bytes)).parse::<ETag>() else {
         return Response::from_parts(parts, Body::from(bytes));
     };
     let unchanged = known.is_some_and(|known| !known.precondition_passes(&tag));

@@ -24,6 +24,7 @@ pub struct FeedStates {
     responses(
         (status = 200, description = "state of every feed", body = FeedStates),
         (status = 400, description = "a parameter was given", body = ProblemBody, content_type = "application/problem+json"),
+        (status = 503, description = "too many requests at once, or too slow", body = ProblemBody, content_type = "application/problem+json"),
     )
 )]
 pub(super) async fn feeds(

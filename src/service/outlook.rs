@@ -18,7 +18,7 @@ use super::problem::{Problem, ProblemBody};
 use super::query::Query;
 use crate::bounds::{HOURS, STEP, THRESHOLD};
 use crate::optics::water::Water;
-use crate::outlook::answer::Outlook;
+use crate::outlook::answer::{Assumption, Outlook};
 use crate::outlook::timeline::{Ask, outlook as compute};
 use crate::weather::feeds::{Document, FeedError};
 
@@ -268,11 +268,16 @@ async fn weather(app: &App, question: &Question) -> (Option<FeedEcho>, Option<Do
 fn assemble(question: &Question, feed: Option<FeedEcho>, document: Option<&Document>) -> Option<OutlookAnswer> {
     let radii = |order| Radii::of(order, question.water, question.water_temperature_c);
     let field = document.map(|document| document.field.as_ref());
+    let mut outlook = compute(&question.ask, field, document.map(|document| document.fetched));
+    if question.water == Water::Sea {
+        let text = "the bow's radius is that of sea water, its prominence that of rain".into();
+        outlook.assumed.push(Assumption { value: "water", text });
+    }
     Some(OutlookAnswer {
         observer: ObserverEcho::of(&question.ask.observer),
         feed,
         radius_deg: BothRadii { primary: radii(1)?, secondary: radii(2)? },
         threshold: question.ask.threshold,
-        outlook: compute(&question.ask, field, document.map(|document| document.fetched)),
+        outlook,
     })
 }

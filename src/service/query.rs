@@ -9,7 +9,7 @@ use chrono::{DateTime, Utc};
 use super::App;
 use super::problem::{FieldProblem, Problem};
 use crate::bounds::{EYE_HEIGHT, LAT, LON, Place, Range, SEA_TEMPERATURE, TIME_MAX, TIME_MIN, WATER_TEMPERATURE};
-use crate::config::default_eye_height_m;
+use crate::config::{default_eye_height_m, nearest};
 use crate::optics::water::Water;
 use crate::sky::observer::Observer;
 
@@ -48,8 +48,7 @@ impl Query {
     pub fn only(&mut self, known: &[&str]) {
         let unknown: Vec<String> = self.given.keys().filter(|name| !known.contains(&name.as_str())).cloned().collect();
         for name in unknown {
-            let nearest = known.iter().max_by(|a, b| strsim::jaro(&name, a).total_cmp(&strsim::jaro(&name, b)));
-            let hint = nearest.map_or_else(String::new, |nearest| format!("; did you mean {nearest}?"));
+            let hint = nearest(&name, known).map_or_else(String::new, |known| format!("; did you mean {known}?"));
             self.refuse(&name, format!("no such parameter{hint}"));
         }
     }

@@ -42,6 +42,7 @@ pub struct SiteEntry {
     responses(
         (status = 200, description = "the configured sites", body = Sites),
         (status = 400, description = "a parameter was given", body = ProblemBody, content_type = "application/problem+json"),
+        (status = 503, description = "too many requests at once, or too slow", body = ProblemBody, content_type = "application/problem+json"),
     )
 )]
 pub(super) async fn sites(

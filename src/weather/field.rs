@@ -34,6 +34,8 @@ pub struct Field {
     pub space: Space,
     /// Whether the document itself says where its values stand; if not, they are taken to stand where they were asked for.
     pub located: bool,
+    /// Whether [`Quantity::CloudBase`] is a height above mean sea level instead of above the ground.
+    pub cloud_base_above_sea: bool,
     /// What the reader passed over, in words for `feed check`.
     pub notes: Vec<String>,
     /// Where each quantity was found in the document.
@@ -202,6 +204,7 @@ impl Field {
             issued,
             space,
             located: true,
+            cloud_base_above_sea: false,
             notes: Vec::new(),
             origins: BTreeMap::new(),
             series: std::array::from_fn(|_| None),

@@ -19,7 +19,7 @@ pub enum Quantity {
     CloudMiddle,
     /// Cover by high cloud, 0..1.
     CloudHigh,
-    /// Height of the lowest cloud base above ground, m.
+    /// Height of the lowest cloud base, m: above ground unless the field says that it is above the sea.
     CloudBase,
     /// Wind speed, m/s.
     WindSpeed,

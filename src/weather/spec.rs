@@ -132,6 +132,21 @@ pub struct ValueMapping {
     /// Numbers that stand for a missing value.
     #[serde(default)]
     pub missing: Vec<f64>,
+    /// Value at steps of a list where `at` points to nothing, for feeds that leave out what is zero; without it such a
+    /// value is missing.
+    pub absent: Option<f64>,
+    /// What the cloud base is measured from; default: the ground.
+    pub above: Option<Above>,
+}
+
+/// What a height is measured from.
+#[derive(Debug, Clone, Copy, PartialEq, Eq, Deserialize)]
+#[serde(rename_all = "lowercase")]
+pub enum Above {
+    /// The ground below.
+    Ground,
+    /// Mean sea level.
+    Sea,
 }
 
 impl ValueMapping {
@@ -165,4 +180,7 @@ pub struct CoverageMapping {
     pub over_min: Option<f64>,
     /// Side of the time stamp on which that period lies; default: before, as CF time bounds usually have it.
     pub period: Option<Side>,
+    /// What the cloud base is measured from; default: the sea for the CF standard name `cloud_base_altitude`, else the
+    /// ground.
+    pub above: Option<Above>,
 }

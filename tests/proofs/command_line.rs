@@ -121,3 +121,36 @@ async fn a_feed_is_tried_out_before_it_is_trusted() {
     let bad = tokio::task::spawn_blocking(move || check(path)).await.unwrap();
     assert!(bad.code == 3 && bad.out.contains("NOT READ") && bad.out.contains("500"), "{} {}", bad.code, bad.out);
 }
+
+#[test]
+fn nonsense_in_limits_and_log_is_refused_with_the_bound() {
+    for (text, words) in [
+        ("[limits]\nconnections = 9000000000000000000", "limits.connections: "),
+        ("[limits]\ndocuments_mb = 0", "between 1 and 1000000 MB"),
+        ("[log]\nlevel = \"loud\"", "log.level: \"loud\" must be one of"),
+    ] {
+        let bad = file(text);
+        let ran = run(&["--config", bad.path().to_str().unwrap(), "serve", "--listen", "127.0.0.1:0"], &[]);
+        assert!(ran.code == 2 && ran.err.contains(words), "{text}: {} {}", ran.code, ran.err);
+    }
+}
+
+#[test]
+fn a_closed_pipe_is_no_fault() {
+    let mut child = Command::new(env!("CARGO_BIN_EXE_rainward"))
+        .args(["outlook", "--site", "gull-stairs", "--json", "--hours", "240"])
+        .stdout(std::process::Stdio::piped())
+        .stderr(std::process::Stdio::piped())
+        .spawn()
+        .unwrap();
+    drop(child.stdout.take());
+    let ended = child.wait_with_output().unwrap();
+    assert!(matches!(ended.status.code(), Some(0 | 1)), "{ended:?}");
+    assert_eq!(String::from_utf8_lossy(&ended.stderr), "");
+}
+
+#[test]
+fn weather_that_does_not_reach_the_place_is_no_weather() {
+    let ran = run(&["outlook", "--lat", "10", "--lon", "10", "--hours", "48"], &[]);
+    assert!(ran.code == 3 && ran.err.contains("the feed says nothing of"), "{} {}", ran.code, ran.err);
+}

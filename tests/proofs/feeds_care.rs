@@ -6,7 +6,7 @@ use std::time::{Duration, Instant};
 
 use futures_util::future::join_all;
 use rainward::bounds::Place;
-use rainward::weather::feeds::{Feeds, Options, Standing};
+use rainward::weather::feeds::{Document, FeedError, Feeds, Options, Standing};
 use rainward::weather::quantity::Quantity;
 
 use crate::misbehaving::*;
@@ -38,6 +38,67 @@ async fn an_asker_who_leaves_does_not_end_the_fetch() {
     assert!(impatient.is_err());
     assert!(feeds.get("coast", here()).await.is_ok());
     assert_eq!(server.asked().len(), 1);
+}
+
+/// Asks for places that share no document.
+fn asks(
+    feeds: &Feeds,
+    count: u32,
+) -> impl Iterator<Item = impl Future<Output = Result<Document, FeedError>> + use<>> + use<> {
+    let feeds = feeds.clone();
+    (0..count).map(move |step| {
+        let feeds = feeds.clone();
+        async move { feeds.get("coast", Place::new(f64::from(step) / 10.0, 0.0).unwrap()).await }
+    })
+}
+
+#[tokio::test]
+async fn beyond_those_who_can_be_served_soon_askers_are_told_to_come_back() {
+    let server = Server::start(|_| slowly(reply(200, &[], FORECAST), 100)).await;
+    let feeds = feeds(spec(&format!("{}/{{lat}}", server.url)), &Hand::new());
+    let answers = join_all(asks(&feeds, 300)).await;
+    let (good, refused): (Vec<_>, Vec<_>) = answers.into_iter().partition(Result::is_ok);
+    // 4 exchanges and 32 that wait for their turn.
+    assert_eq!((good.len(), server.asked().len()), (36, 36));
+    for refusal in refused {
+        let Err(FeedError::NoDocument { reason, .. }) = refusal else { panic!("{refusal:?}") };
+        assert_eq!(reason, "the feed is busy; try again");
+    }
+    assert!(feeds.get("coast", here()).await.is_ok(), "busy for ever");
+    assert_eq!(state(&feeds).last_failure, None);
+}
+
+#[tokio::test(flavor = "multi_thread")]
+async fn where_a_feed_is_busy_an_old_document_is_served_at_once() {
+    let hand = Hand::new();
+    let server = Server::start(|_| reply(200, &[("Cache-Control", "max-age=60")], FORECAST)).await;
+    let feeds = feeds(spec(&format!("{}/{{lat}}", server.url)), &hand);
+    let first = feeds.get("coast", here()).await.unwrap();
+    hand.forward(61);
+    server.now_do(|_| slowly(reply(200, &[], FORECAST), 700));
+    let crowd = tokio::spawn(join_all(asks(&feeds, 36)));
+    eventually("the crowd is there", || server.asked().len() == 5).await;
+    let begin = Instant::now();
+    let old = feeds.get("coast", here()).await.unwrap();
+    assert!(begin.elapsed() < Duration::from_millis(500), "{:?}", begin.elapsed());
+    assert_eq!((old.version, old.fetched, old.stale), (first.version, first.fetched, true));
+    crowd.abort();
+}
+
+#[tokio::test(flavor = "multi_thread")]
+async fn who_leaves_the_queue_is_not_fetched_for_but_what_began_goes_on() {
+    let server = Server::start(|_| slowly(reply(200, &[], FORECAST), 500)).await;
+    let feeds = feeds(spec(&format!("{}/{{lat}}", server.url)), &Hand::new());
+    let soon = Duration::from_millis(100);
+    let crowd = join_all(asks(&feeds, 20).map(|ask| tokio::time::timeout(soon, ask)));
+    // Two wait behind them for one document, of whom one leaves.
+    let leaver = tokio::time::timeout(soon, feeds.get("coast", here()));
+    let (gone, left, served) = tokio::join!(crowd, leaver, feeds.get("coast", here()));
+    assert!(left.is_err() && gone.iter().all(Result::is_err));
+    assert!(served.is_ok(), "{served:?}");
+    eventually("four exchanges end", || state(&feeds).documents == 5).await;
+    tokio::time::sleep(Duration::from_millis(100)).await;
+    assert_eq!(server.asked().len(), 5);
 }
 
 #[tokio::test(flavor = "multi_thread")]
@@ -119,11 +180,30 @@ async fn a_confirmed_document_is_new_again_without_being_sent() {
             hand.forward(61);
             let again = feeds.get("coast", here()).await.unwrap();
             assert_eq!((again.version, again.stale, again.fetched), (first.version, false, hand.clock().now()));
+            assert_eq!(again.first_seen, first.fetched);
         }
         let conditional = server.asked().iter().filter(|asked| asked.headers.contains_key(condition)).count();
         assert_eq!((server.asked().len(), conditional), (4, 3));
         assert_eq!(state(&feeds).last_failure, None);
     }
+}
+
+#[tokio::test]
+async fn the_same_bytes_sent_again_are_no_newer_forecast() {
+    let hand = Hand::new();
+    let send = |body: &str| reply(200, &[("Cache-Control", "max-age=60")], body);
+    let server = Server::start(move |_| send(FORECAST)).await;
+    let feeds = feeds(spec(&format!("{}/x", server.url)), &hand);
+    let first = feeds.get("coast", here()).await.unwrap();
+    assert_eq!(first.first_seen, hand.clock().now());
+    hand.forward(61);
+    let again = feeds.get("coast", here()).await.unwrap();
+    assert_eq!((again.first_seen, again.fetched), (first.fetched, hand.clock().now()));
+    server.now_do(move |_| send(&FORECAST.replace("12.0", "13.0")));
+    hand.forward(61);
+    let newer = feeds.get("coast", here()).await.unwrap();
+    assert_eq!((newer.first_seen, newer.fetched), (hand.clock().now(), hand.clock().now()));
+    assert_eq!(server.asked().len(), 3);
 }
 
 #[tokio::test]

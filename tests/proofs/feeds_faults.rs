@@ -7,6 +7,7 @@ use std::time::Duration;
 use chrono::TimeDelta;
 use flate2::Compression;
 use rainward::weather::feeds::{FeedError, Standing};
+use rainward::weather::spec::Format;
 
 use crate::misbehaving::*;
 
@@ -294,4 +295,44 @@ async fn no_custom_header_reaches_another_host_and_no_secret_comes_back() {
     assert!(refusal.contains("***") && !refusal.contains(SECRET), "{refusal}");
     let told = format!("{:?} {:?} {:?}", echoed.states(), echoed.check("coast", here()).await, echoed);
     assert!(told.contains("***") && !told.contains(SECRET), "{told}");
+}
+
+#[tokio::test]
+async fn what_stands_literally_in_address_and_headers_does_not_come_back_either() {
+    let server = Server::start(|_| good()).await;
+    let hand = Hand::new();
+    let address = server.url.replace("http://", "http://north-quay:user%2Fpassword@");
+    let mut literal = spec(&format!("{address}/v1/path-token-{{lat}}/x?lon={{lon}}&id=query%20token"));
+    literal.headers.insert("Authorization-Of".into(), format!("Bearer {}", "header-token-".repeat(5)));
+    let feeds = feeds(literal, &hand);
+    let long = "header-token-".repeat(5);
+    for echo in ["north-quay", "user/password", "user%2Fpassword", "path-token-", "query token", "query%20token", &long]
+    {
+        server.now_do({
+            let echo = echo.to_owned();
+            move |_| json(&FORECAST.replace("2031-05-04T01:00:00Z", &format!("no {echo}")))
+        });
+        let report = feeds.check("coast", here()).await.unwrap();
+        let refusal = feeds.get("coast", here()).await.unwrap_err();
+        let told = format!("{report:?} {refusal:?} {:?}", feeds.states());
+        assert!(told.contains("no ***\\\" is no RFC 3339 time"), "{told}");
+        assert!(!told.contains("token") && !told.contains("quay") && !told.contains("password"), "{told}");
+        assert!(told.contains("127.0.0.1") && told.contains("/t: "), "{told}");
+        hand.forward(7200);
+    }
+}
+
+#[tokio::test]
+async fn a_secret_repeated_in_what_is_passed_over_is_not_told() {
+    let coverage = r#"{"type": "Coverage", "domain": {"type": "Domain", "domainType": "PointSeries", "axes":
+        {"x": {"values": [-4.1]}, "y": {"values": [60.21]}, "t": {"values": ["2031-05-04T00:00:00Z"]}}},
+        "parameters": {"T": {"unit": {"symbol": "Cel"}, "observedProperty": {"id": "air_temperature"}},
+            "W": {"unit": {"symbol": "SECRET"}, "observedProperty": {"id": "wind_speed"}}},
+        "ranges": {"T": {"type": "NdArray", "dataType": "float", "values": [5]}}}"#;
+    let server = Server::start(|_| json(&coverage.replace("SECRET", SECRET))).await;
+    let mut passing = spec(&format!("{}/{{lat}}", server.url));
+    (passing.format, passing.json) = (Format::Coveragejson, None);
+    let report = feeds(passing, &Hand::new()).check("coast", here()).await.unwrap();
+    let note = "wind_speed: W left out: its unit \"***\" is not known; name one under units";
+    assert!(report.error.is_none() && report.notes.iter().any(|told| told == note), "{:?}", report.notes);
 }

@@ -115,7 +115,7 @@ impl Reader<'_> {
         };
         let found = parameters::recognise(parameters, self.mapping, &mut self.notes)?;
         let mut axes = None;
-        for Found { quantity, key, unit } in found {
+        for Found { quantity, key, unit, above_sea } in found {
             self.named.insert(quantity);
             let Some(range) = coverage.ranges.remove(key) else {
                 self.notes.push(format!("{}: {key} has no range", quantity.name()));
@@ -142,6 +142,7 @@ impl Reader<'_> {
                 empty => empty.insert(Field::new(axes.space.clone(), self.issued)?),
             };
             let (intake, series) = series;
+            field.cloud_base_above_sea |= above_sea;
             intake.deliver(field, series)?;
         }
         Ok(())

@@ -6,7 +6,7 @@ use super::document::Parameter;
 use crate::weather::intake::short;
 use crate::weather::quantity::Quantity;
 use crate::weather::read::ReadError;
-use crate::weather::spec::CoverageMapping;
+use crate::weather::spec::{Above, CoverageMapping};
 use crate::weather::unit::Unit;
 
 /// CF standard names (CF Conventions standard name table; from memory) by quantity.
@@ -39,6 +39,8 @@ pub(super) struct Found<'a> {
     pub quantity: Quantity,
     pub key: &'a str,
     pub unit: Unit,
+    /// Whether it is a cloud base above the sea.
+    pub above_sea: bool,
 }
 
 /// The quantities among the parameters: those of the mapping first, the others by CF standard name. A parameter that
@@ -54,7 +56,7 @@ pub(super) fn recognise<'a>(
         if let Some((key, parameter)) = parameters.get_key_value(key) {
             let unit = unit(parameter, quantity, mapping)
                 .map_err(|what| ReadError::Unexpected { at: format!("parameter {key}"), what })?;
-            found.push(Found { quantity, key, unit });
+            found.push(Found { quantity, key, unit, above_sea: above_sea(parameter, quantity, mapping) });
         }
     }
     for (key, parameter) in parameters {
@@ -67,14 +69,17 @@ pub(super) fn recognise<'a>(
             continue;
         }
         match unit(parameter, quantity, mapping) {
-            Ok(unit) => found.push(Found { quantity, key, unit }),
+            Ok(unit) => found.push(Found { quantity, key, unit, above_sea: above_sea(parameter, quantity, mapping) }),
             Err(what) => notes.push(format!("{}: {key} left out: {what}", quantity.name())),
         }
     }
-    if found.iter().any(|found| found.quantity == Quantity::CloudBase && standard(&parameters[found.key]).is_some()) {
-        notes.push("cloud_base: given above the sea and taken as above the ground".into());
-    }
     Ok(found)
+}
+
+/// Whether a cloud base is measured from the sea: by the mapping, else by its CF standard name, of which there is one.
+fn above_sea(parameter: &Parameter, quantity: Quantity, mapping: &CoverageMapping) -> bool {
+    let by_name = || standard(parameter) == Some(Quantity::CloudBase);
+    quantity == Quantity::CloudBase && mapping.above.map_or_else(by_name, |above| above == Above::Sea)
 }
 
 /// The quantity by CF standard name: the end of the observed property's id, or its label.

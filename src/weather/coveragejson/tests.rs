@@ -211,3 +211,21 @@ fn a_collection_is_read_where_each_quantity_comes_once_and_at_one_place() {
     assert!(refusal(&with(&[one("T", 1), one("T", 1)])).contains("more than one coverage gives temperature"));
     assert_eq!(refusal(&with(&[])), "nothing to use: the collection has no coverages");
 }
+
+#[test]
+fn a_cloud_base_is_above_the_sea_by_its_standard_name_or_the_mapping() {
+    let axes = r#"{"x": {"values": [1]}, "y": {"values": [52]}, "t": {"values": ["2031-05-04T12:00:00Z"]}}"#;
+    let range = r#"{"B": {"type": "NdArray", "dataType": "float", "values": [500]}}"#;
+    for (name, mapping, expected) in [
+        ("cloud_base_altitude", "{}", true),
+        ("cloud_base_altitude", r#"{"parameters": {"cloud_base": "B"}}"#, true),
+        ("cloud_base_altitude", r#"{"above": "ground"}"#, false),
+        ("cloud_base_height_above_ground", r#"{"parameters": {"cloud_base": "B"}}"#, false),
+        ("ceiling", r#"{"parameters": {"cloud_base": "B"}, "above": "sea"}"#, true),
+    ] {
+        let parameter = format!(r#"{{"B": {{"unit": {{"symbol": "m"}}, "observedProperty": {{"id": "{name}"}}}}}}"#);
+        let field = read_with(&coverage("PointSeries", axes, &parameter, range), mapping).unwrap();
+        assert_eq!(field.series(Quantity::CloudBase).unwrap().values, [500.0]);
+        assert_eq!((field.cloud_base_above_sea, &field.notes[..]), (expected, &[][..]), "{name} {mapping}");
+    }
+}

@@ -1,6 +1,6 @@
 //! Feeds: fetching, caching, and the last good document of each.
 //!
-//! - `source`: a feed as configured, checked and with the environment filled in;
+//! - `source`: a feed as configured, checked and with the environment filled in; `secrets`: what of it is never told;
 //! - `http`: one exchange with its server; `freshness`: what the server says of keeping its document;
 //! - `state`: what went well and wrong so far, and when to try again;
 //! - `refresh`: one document fetched and read, once however many ask;
@@ -10,6 +10,7 @@ mod check;
 mod freshness;
 mod http;
 mod refresh;
+mod secrets;
 mod source;
 mod state;
 
@@ -32,6 +33,9 @@ use crate::clock::Clock;
 
 /// How long someone who could be served an old document waits for a new one.
 const PATIENCE: Duration = Duration::from_secs(1);
+
+/// What those are told who find no document and too many waiting.
+const BUSY: &str = "the feed is busy; try again";
 
 /// Makes the document of the built-in demo for a time.
 pub type Generator = Arc<dyn Fn(DateTime<Utc>) -> Vec<u8> + Send + Sync>;
@@ -73,6 +77,8 @@ pub struct Document {
     pub field: Arc<Field>,
     /// When it was fetched or last confirmed by the server.
     pub fetched: DateTime<Utc>,
+    /// When this version of it, byte for byte, was first received: no later than `fetched`.
+    pub first_seen: DateTime<Utc>,
     /// Whether a newer one should have come by now.
     pub stale: bool,
     /// Changes whenever the document's bytes change: a hash of them.
@@ -111,21 +117,16 @@ impl Feeds {
         Self::with_options(specs, clock, Options::default())
     }
 
-    /// Sets up the configured feeds; nothing is fetched yet.
+    /// Sets up the configured feeds; nothing is fetched yet. Their names are unique by configuration.
     ///
     /// # Errors
     /// Every [`SetupError`] found.
     pub fn with_options(specs: &[FeedSpec], clock: Clock, options: Options) -> Result<Self, Vec<SetupError>> {
         let (mut feeds, mut faults) = (Vec::new(), Vec::new());
-        for (index, spec) in specs.iter().enumerate() {
-            let mut fault = |field: &str, what: &str| {
-                faults.push(SetupError { feed: spec.name.clone(), field: field.into(), what: what.into() });
-            };
-            if specs[..index].iter().any(|other| other.name == spec.name) {
-                fault("name", "is used twice");
-            }
+        for spec in specs {
             if spec.url.starts_with("demo:") && options.demo.is_none() {
-                fault("url", "there is no demo here");
+                let (feed, field, what) = (spec.name.clone(), "url".into(), "there is no demo here".into());
+                faults.push(SetupError { feed, field, what });
             }
             match Source::new(spec, &options.environment) {
                 Ok(source) => feeds.push(Feed::new(source)),
@@ -136,7 +137,8 @@ impl Feeds {
     }
 
     /// The document of a feed for a place: the one kept while it is fresh, else a new one. Where an old one is kept, a new
-    /// one is waited for no longer than a second; a caller who leaves does not end the fetch.
+    /// one is waited for no longer than a second; a caller who leaves does not end an exchange that has begun. Of the
+    /// documents of one feed 4 are fetched at a time and 32 wait; beyond that the old one is served at once.
     ///
     /// # Errors
     /// [`FeedError`] when there is none, not even an old one.
@@ -148,13 +150,17 @@ impl Feeds {
         let mut slot = self.0.slot(index, &ask).await;
         let now = self.0.clock.now();
         if slot.is_due(now) && feed.held(now).is_none() {
-            let flight = self.0.flight(index, &ask);
-            if slot.good.is_none() {
-                slot = flight.await;
-            } else if let Ok(landed) = tokio::time::timeout(PATIENCE, flight).await
-                && landed.good.is_some()
-            {
-                slot = landed;
+            match self.0.flight(index, &ask) {
+                None if slot.good.is_none() => return Err(no_document(BUSY.into())),
+                None => {}
+                Some(flight) if slot.good.is_none() => slot = flight.await,
+                Some(flight) => {
+                    if let Ok(landed) = tokio::time::timeout(PATIENCE, flight).await
+                        && landed.good.is_some()
+                    {
+                        slot = landed;
+                    }
+                }
             }
         }
         if let Some(good) = &slot.good {
@@ -174,6 +180,7 @@ impl Feeds {
             feed: name.to_owned(),
             field,
             fetched: good.fetched,
+            first_seen: good.first_seen,
             stale: good.is_stale(self.0.clock.now()),
             version: good.version,
         }

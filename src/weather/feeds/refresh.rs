@@ -5,7 +5,7 @@ use std::sync::{Arc, Mutex, OnceLock, PoisonError};
 
 use chrono::{DateTime, Utc};
 use futures_util::FutureExt;
-use futures_util::future::{BoxFuture, Shared};
+use futures_util::future::{BoxFuture, Shared, WeakShared};
 use moka::future::Cache;
 use moka::policy::EvictionPolicy;
 use reqwest::Client;
@@ -29,21 +29,32 @@ const MOST_DOCUMENTS: u64 = 4096;
 /// Most exchanges with one feed's server at a time.
 const MOST_EXCHANGES: usize = 4;
 
+/// Most documents of one feed that wait for their exchange.
+const MOST_WAITING: usize = 32;
+
 /// Which feed and which of its documents.
 pub(super) type Key = (usize, u128);
 
-type Flight = Shared<BoxFuture<'static, Arc<Slot>>>;
+/// The fetch of one document, for all who wait for it.
+type Fetching = BoxFuture<'static, Arc<Slot>>;
 
 /// A feed with its history.
 pub(super) struct Feed {
     pub source: Source,
     pub ledger: Mutex<Ledger>,
-    exchanges: Semaphore,
+    /// Those that wait and those that are exchanged.
+    seats: Arc<Semaphore>,
+    exchanges: Arc<Semaphore>,
 }
 
 impl Feed {
     pub fn new(source: Source) -> Self {
-        Self { source, ledger: Mutex::default(), exchanges: Semaphore::new(MOST_EXCHANGES) }
+        Self {
+            source,
+            ledger: Mutex::default(),
+            seats: Arc::new(Semaphore::new(MOST_EXCHANGES + MOST_WAITING)),
+            exchanges: Arc::new(Semaphore::new(MOST_EXCHANGES)),
+        }
     }
 
     /// Why no document of this feed is asked for now, while it is in trouble as a whole.
@@ -59,7 +70,7 @@ pub(super) struct Inner {
     pub clock: Clock,
     /// Kept by size, never by time: the last good document must outlive its freshness.
     pub slots: Cache<Key, Arc<Slot>>,
-    flights: Mutex<HashMap<Key, Flight>>,
+    flights: Mutex<HashMap<Key, WeakShared<Fetching>>>,
     client: OnceLock<Result<Client, String>>,
     demo: Option<Generator>,
     memory_bytes: u64,
@@ -95,27 +106,42 @@ impl Inner {
         self.slots.get(&(index, ask.key)).await.unwrap_or_default()
     }
 
-    /// The fetch under way for a document, begun if there is none. It runs on its own, so that a caller who leaves does
-    /// not end it.
-    pub fn flight(self: &Arc<Self>, index: usize, ask: &Ask) -> Flight {
+    /// The fetch under way for a document, begun if there is none; none where the feed is busy. It gives up its place in
+    /// the queue when all who wait for it leave, but once its exchange has begun it goes on without them.
+    pub fn flight(self: &Arc<Self>, index: usize, ask: &Ask) -> Option<Shared<Fetching>> {
         let key = (index, ask.key);
         let mut flights = self.flights.lock().unwrap_or_else(PoisonError::into_inner);
-        flights
-            .entry(key)
-            .or_insert_with(|| {
-                let (inner, ask) = (Arc::clone(self), ask.clone());
-                let task = tokio::spawn(async move {
-                    let landing = Landing { inner, key };
-                    landing.inner.refresh(index, &ask).await
-                });
-                task.map(|slot| slot.unwrap_or_else(|_| Arc::new(interrupted()))).boxed().shared()
-            })
-            .clone()
+        flights.retain(|_, flight| flight.upgrade().is_some_and(|flight| flight.peek().is_none()));
+        if let Some(flight) = flights.get(&key).and_then(WeakShared::upgrade) {
+            return Some(flight);
+        }
+        let feed = &self.feeds[index];
+        let seat = Arc::clone(&feed.seats).try_acquire_owned().ok()?;
+        let exchanges = Arc::clone(&feed.exchanges);
+        let (inner, ask) = (Arc::clone(self), ask.clone());
+        let flight = async move {
+            let turn = exchanges.acquire_owned().await;
+            // Keeps the flight on the list until the exchange ends, though all may leave.
+            let listed = inner.flying(key);
+            let exchange = tokio::spawn(async move {
+                let slot = inner.refresh(index, &ask).await;
+                drop((seat, turn, listed));
+                slot
+            });
+            exchange.await.unwrap_or_else(|_| Arc::new(interrupted()))
+        };
+        let flight = flight.boxed().shared();
+        flights.insert(key, flight.downgrade()?);
+        Some(flight)
+    }
+
+    /// A flight that someone waits for.
+    fn flying(&self, key: Key) -> Option<Shared<Fetching>> {
+        self.flights.lock().unwrap_or_else(PoisonError::into_inner).get(&key).and_then(WeakShared::upgrade)
     }
 
     async fn refresh(&self, index: usize, ask: &Ask) -> Arc<Slot> {
         let feed = &self.feeds[index];
-        let Ok(_turn) = feed.exchanges.acquire().await else { return Arc::new(interrupted()) };
         let before = self.slot(index, ask).await;
         let now = self.clock.now();
         // What was waited for may have come, or the feed failed, in the meantime.
@@ -172,6 +198,7 @@ impl Inner {
                 return Ok(Good {
                     field: Arc::clone(&kept.field),
                     version: kept.version,
+                    first_seen: kept.first_seen,
                     fetched: now,
                     fresh_until: now + delta(freshness.lifetime),
                     freshness: Some(freshness),
@@ -182,16 +209,16 @@ impl Inner {
             }
         };
         let (bytes, version) = (body.len(), xxh3_64(&body));
-        let field = match kept {
-            Some(kept) if kept.version == version => Arc::clone(&kept.field),
-            _ => Arc::new(understand(feed, ask, body, status).await?),
+        let (field, first_seen) = match kept {
+            Some(kept) if kept.version == version => (Arc::clone(&kept.field), kept.first_seen),
+            _ => (Arc::new(understand(feed, ask, body, status).await?), now),
         };
         if field.bytes() as u64 > self.memory_bytes / 2 {
             return Err(Fault::document("the document is too large for the memory of the feeds", status));
         }
         info!(feed = %feed.source.spec.name, bytes, "fetched");
         let lifetime = freshness.as_ref().map_or(refresh, |freshness| freshness.lifetime);
-        Ok(Good { field, version, fetched: now, fresh_until: now + delta(lifetime), freshness })
+        Ok(Good { field, version, first_seen, fetched: now, fresh_until: now + delta(lifetime), freshness })
     }
 
     /// Asks the server, or the demo.
@@ -216,7 +243,10 @@ impl Inner {
 pub(super) async fn understand(feed: &Feed, ask: &Ask, body: Vec<u8>, status: Option<u16>) -> Result<Field, Fault> {
     let (spec, place) = (feed.source.spec.clone(), ask.place);
     match tokio::task::spawn_blocking(move || read(&body, &spec, place)).await {
-        Ok(Ok(field)) => Ok(field),
+        Ok(Ok(mut field)) => {
+            field.notes = field.notes.into_iter().map(|note| feed.source.scrub(note)).collect();
+            Ok(field)
+        }
         Ok(Err(error)) => Err(Fault::document(error.to_string(), status)),
         Err(_) => Err(Fault::document("reading the document broke off", status)),
     }
@@ -225,16 +255,4 @@ pub(super) async fn understand(feed: &Feed, ask: &Ask, body: Vec<u8>, status: Op
 /// What is left of a fetch that did not end: nothing, until someone asks again.
 fn interrupted() -> Slot {
     Slot::default()
-}
-
-/// Takes a flight off the list however it ends.
-struct Landing {
-    inner: Arc<Inner>,
-    key: Key,
-}
-
-impl Drop for Landing {
-    fn drop(&mut self) {
-        self.inner.flights.lock().unwrap_or_else(PoisonError::into_inner).remove(&self.key);
-    }
 }

@@ -6,6 +6,7 @@ use std::time::Duration;
 use iri_string::spec::UriSpec;
 use iri_string::template::UriTemplateStr;
 use iri_string::template::simple_context::SimpleContext;
+use percent_encoding::{AsciiSet, CONTROLS, utf8_percent_encode};
 use reqwest::Url;
 use reqwest::header::{HeaderMap, HeaderName, HeaderValue};
 use secrecy::{ExposeSecret, SecretString};
@@ -13,6 +14,7 @@ use thiserror::Error;
 use xxhash_rust::xxh3::xxh3_128;
 
 use super::Environment;
+use super::secrets::{PLACE, Secrets};
 use crate::bounds::{MAX_BYTES, Place, REFRESH, TIMEOUT};
 use crate::weather::spec::{FeedSpec, Format};
 use crate::weather::{coveragejson, json};
@@ -40,7 +42,7 @@ pub(super) struct Source {
     pub host: String,
     /// None for the demo.
     template: Option<SecretString>,
-    secrets: Vec<SecretString>,
+    secrets: Secrets,
 }
 
 /// One document of a feed: where it is and what identifies it.
@@ -57,6 +59,20 @@ pub(super) struct Ask {
 /// Decimals of the coordinates sent: places closer than some 100 m share a document.
 const DECIMALS: i32 = 3;
 
+/// What may not stand literally in a template (RFC 6570, 2.1), besides what is not ASCII.
+const NOT_LITERAL: &AsciiSet = &CONTROLS
+    .add(b' ')
+    .add(b'"')
+    .add(b'\'')
+    .add(b'<')
+    .add(b'>')
+    .add(b'\\')
+    .add(b'^')
+    .add(b'`')
+    .add(b'{')
+    .add(b'|')
+    .add(b'}');
+
 impl Source {
     /// Checks a feed's description and fills in the environment; all faults at once.
     pub fn new(spec: &FeedSpec, environment: &Environment) -> Result<Self, Vec<SetupError>> {
@@ -64,9 +80,6 @@ impl Source {
         let mut fault = |field: &str, what: String| {
             faults.push(SetupError { feed: spec.name.clone(), field: field.to_owned(), what });
         };
-        if spec.name.is_empty() {
-            fault("name", "is empty".into());
-        }
         for (field, checked) in [
             ("refresh_min", REFRESH.check(spec.refresh_min)),
             ("timeout_s", TIMEOUT.check(spec.timeout_s)),
@@ -86,18 +99,22 @@ impl Source {
             fault(format!("{key}.{inner}").trim_end_matches('.'), what);
         }
 
-        let mut secrets = Vec::new();
-        let (mut template, mut host) = (None, "demo:".to_owned());
+        let mut filled_in = Vec::new();
+        let (mut template, mut host, mut literal) = (None, "demo:".to_owned(), None);
         if !spec.url.starts_with("demo:") {
-            let filled = fill(&spec.url, environment, &mut secrets).and_then(|url| Ok((address(&url)?, url)));
+            let encoded = |value: &str| utf8_percent_encode(value, NOT_LITERAL).to_string();
+            let filled = fill(&spec.url, environment, encoded, &mut filled_in)
+                .and_then(|url| Ok((address(&url)?, expand(&url, PLACE, PLACE)?, url)));
             match filled {
-                Ok((origin, url)) => (template, host) = (Some(SecretString::from(url)), origin),
+                Ok((origin, parts, url)) => {
+                    (template, host, literal) = (Some(SecretString::from(url)), origin, Some(parts));
+                }
                 Err(what) => fault("url", what),
             }
         }
         let mut headers = HeaderMap::new();
         for (name, value) in &spec.headers {
-            match header(name, value, environment, &mut secrets) {
+            match header(name, value, environment, &mut filled_in) {
                 Ok((name, value)) => drop(headers.insert(name, value)),
                 Err(what) => fault(&format!("headers.{name}"), what),
             }
@@ -105,7 +122,9 @@ impl Source {
         if !faults.is_empty() {
             return Err(faults);
         }
+        let public = format!("{host} {:?} {:?}", spec.json, spec.coveragejson);
         Ok(Self {
+            secrets: Secrets::new(filled_in, literal.as_ref(), &headers, &public),
             spec: spec.clone(),
             refresh: Duration::from_secs_f64(spec.refresh_min * 60.0),
             timeout: Duration::from_secs_f64(spec.timeout_s),
@@ -113,7 +132,6 @@ impl Source {
             headers,
             host,
             template,
-            secrets,
         })
     }
 
@@ -126,17 +144,14 @@ impl Source {
         let Some(template) = &self.template else {
             return Some(Ask { key: 0, place, url: None });
         };
-        let url = expand(template.expose_secret(), place).ok()?;
+        let [lat, lon] = [place.lat_deg(), place.lon_deg()].map(|degrees| degrees.to_string());
+        let url = expand(template.expose_secret(), &lat, &lon).ok()?;
         Some(Ask { key: xxh3_128(url.as_str().as_bytes()), place, url: Some(url) })
     }
 
-    /// Takes values from the environment out of a text that comes from a server.
+    /// Takes what may be secret in address and headers out of a text that comes from a server.
     pub fn scrub(&self, text: String) -> String {
-        self.secrets
-            .iter()
-            .map(ExposeSecret::expose_secret)
-            .filter(|secret| !secret.is_empty())
-            .fold(text, |text, secret| text.replace(secret, "***"))
+        self.secrets.scrub(text)
     }
 }
 
@@ -148,8 +163,7 @@ fn address(url: &str) -> Result<String, String> {
             return Err(format!("has {{{}}}; only {{lat}} and {{lon}} are known", name.as_str()));
         }
     }
-    let nowhere = Place::new(0.0, 0.0).map_err(|bound| bound.to_string())?;
-    let url = expand(url, nowhere)?;
+    let url = expand(url, "0", "0")?;
     if !["http", "https"].contains(&url.scheme()) {
         return Err("must begin with http:// or https:// (or demo: for the built-in demo)".into());
     }
@@ -158,10 +172,10 @@ fn address(url: &str) -> Result<String, String> {
     Ok(format!("{}://{host}{port}", url.scheme()))
 }
 
-fn expand(template: &str, place: Place) -> Result<Url, String> {
+fn expand(template: &str, lat: &str, lon: &str) -> Result<Url, String> {
     let mut context = SimpleContext::new();
-    context.insert("lat", place.lat_deg().to_string());
-    context.insert("lon", place.lon_deg().to_string());
+    context.insert("lat", lat);
+    context.insert("lon", lon);
     let text = UriTemplateStr::new(template)
         .and_then(|template| template.expand::<UriSpec, _>(&context).map(|expanded| expanded.to_string()))
         .map_err(|_| "is no URL template (RFC 6570)".to_owned())?;
@@ -172,17 +186,22 @@ fn header(
     name: &str,
     value: &str,
     environment: &Environment,
-    secrets: &mut Vec<SecretString>,
+    filled_in: &mut Vec<String>,
 ) -> Result<(HeaderName, HeaderValue), String> {
     let name = name.parse::<HeaderName>().map_err(|_| "is no header name".to_owned())?;
-    let filled = fill(value, environment, secrets)?;
+    let filled = fill(value, environment, str::to_owned, filled_in)?;
     let mut value = HeaderValue::from_str(&filled).map_err(|_| "has a value that no header can hold".to_owned())?;
     value.set_sensitive(true);
     Ok((name, value))
 }
 
-/// Replaces each `${NAME}` by the environment; nothing else in the text is special.
-fn fill(text: &str, environment: &Environment, secrets: &mut Vec<SecretString>) -> Result<String, String> {
+/// Replaces each `${NAME}` by the environment as `written`; nothing else in the text is special.
+fn fill(
+    text: &str,
+    environment: &Environment,
+    written: impl Fn(&str) -> String,
+    filled_in: &mut Vec<String>,
+) -> Result<String, String> {
     let escaped = text.replace('\\', r"\\").replace('$', r"\$").replace(r"\${", "${");
     let template = subst::Template::from_str(&escaped).map_err(|error| format!("cannot be filled in: {error}"))?;
     let mut known = HashMap::new();
@@ -193,8 +212,9 @@ fn fill(text: &str, environment: &Environment, secrets: &mut Vec<SecretString>) 
             Err(subst::error::ExpandError::NoSuchVariable(missing)) if !known.contains_key(&missing.name) => {
                 let value = environment(&missing.name)
                     .ok_or_else(|| format!("the environment variable {} is not set", missing.name))?;
-                secrets.push(SecretString::from(value.clone()));
-                known.insert(missing.name, value);
+                let text = written(&value);
+                filled_in.extend([value, text.clone()]);
+                known.insert(missing.name, text);
             }
             Err(_) => return Err("cannot be filled in from the environment".into()),
         }

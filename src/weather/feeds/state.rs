@@ -106,6 +106,7 @@ pub(super) fn delta(duration: Duration) -> TimeDelta {
 pub(super) struct Good {
     pub field: Arc<Field>,
     pub version: u64,
+    pub first_seen: DateTime<Utc>,
     pub fetched: DateTime<Utc>,
     pub fresh_until: DateTime<Utc>,
     /// None for the demo.

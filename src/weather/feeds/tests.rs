@@ -59,3 +59,25 @@ fn addresses_are_filled_in_and_places_close_by_share_one() {
     assert!(source.headers["x-key"].is_sensitive());
     assert_eq!(source.scrub("wrong key s3cret".into()), "wrong key ***");
 }
+
+#[test]
+fn values_of_the_environment_are_no_templates_and_are_never_told() {
+    let value =
+        |value: &'static str| -> Environment { Arc::new(move |name| (name == "SEC").then(|| value.to_owned())) };
+    let with = |url: &str| spec(&format!(r#"{{"name": "a", "url": "{url}", "format": "coveragejson"}}"#));
+    let asked = |url: &str, sec| {
+        let source = Source::new(&with(url), &value(sec)).map_err(|faults| format!("{faults:?}"))?;
+        Ok::<_, String>((source.ask(Place::new(60.0, -4.0).unwrap()).unwrap().url.unwrap().to_string(), source))
+    };
+    let (url, source) = asked("https://weather.example/{lat}?k=${SEC}", "s3{lat}c{r et").unwrap();
+    assert_eq!(url, "https://weather.example/60?k=s3%7Blat%7Dc%7Br%20et");
+    for echo in ["s3{lat}c{r et", "s3%7Blat%7Dc%7Br%20et"] {
+        assert_eq!(source.scrub(format!("no key {echo}!")), "no key ***!");
+    }
+    let (url, _) = asked("${SEC}/{lat}", "https://weather.example/a%20b").unwrap();
+    assert_eq!(url, "https://weather.example/a%20b/60");
+    for url in ["ht{tp://${SEC}/{lat", "https://weather.example:${SEC}/", "https://weather.example/{day}?${SEC}"] {
+        let Err(refusal) = asked(url, "{s3cret}") else { panic!("{url} taken") };
+        assert!(!refusal.contains("s3cret"), "{refusal}");
+    }
+}

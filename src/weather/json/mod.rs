@@ -11,13 +11,13 @@ use super::field::{Field, Series, Space, Times};
 use super::intake::{self, Intake};
 use super::quantity::Quantity;
 use super::read::{self, ReadError};
-use super::spec::{JsonMapping, Side, ValueMapping};
+use super::spec::{Above, JsonMapping, Side, ValueMapping};
 use crate::bounds::{OVER_MIN, Place};
 
 /// Reads a JSON document; `asked` is where its values stand when the mapping does not say.
 ///
-/// Absent keys, nulls and the mapping's `missing` numbers are missing values; so are numbers outside what is possible,
-/// which are counted in the notes. Steps out of order are sorted.
+/// Nulls, the mapping's `missing` numbers and, unless it says what they stand for, absent keys are missing values; so are
+/// numbers outside what is possible, which are counted in the notes. Steps out of order are sorted.
 ///
 /// # Errors
 /// See [`ReadError`]: a pointer that matches nothing, arrays of different lengths, times that occur twice, amounts
@@ -38,7 +38,14 @@ pub fn read(bytes: &[u8], mapping: &JsonMapping, asked: Place) -> Result<Field, 
         field.notes.push("the steps were out of order and have been sorted".into());
     }
     for (&quantity, value) in &mapping.values {
-        let column = steps.column(&value.at, times.len(), &mapping.time)?;
+        let column = steps.column(value, times.len(), &mapping.time)?;
+        let absent = column.iter().filter(|found| found.is_none()).count();
+        if let (1.., Some(number)) = (absent, value.absent) {
+            let (name, unit, count) = (quantity.name(), value.unit.code(), times.len());
+            field
+                .notes
+                .push(format!("{name}: {} is absent in {absent} of {count} steps: {number} {unit} there", value.at));
+        }
         let mut intake = Intake::new(quantity, value.unit, &value.at)?;
         let series = if value.has_period() {
             let periods = steps.periods(value, &times, &stamp)?;
@@ -49,6 +56,8 @@ pub fn read(bytes: &[u8], mapping: &JsonMapping, asked: Place) -> Result<Field, 
         };
         intake.deliver(&mut field, series)?;
     }
+    field.cloud_base_above_sea =
+        mapping.values.get(&Quantity::CloudBase).is_some_and(|value| value.above == Some(Above::Sea));
     if field.quantities().next().is_none() {
         return Err(ReadError::Empty(format!("none of the values mapped has a value in {} steps", times.len())));
     }
@@ -80,6 +89,17 @@ pub fn faults(mapping: &JsonMapping) -> Vec<(String, String)> {
         for pointer in [Some(&value.at), value.since.as_ref()].into_iter().flatten() {
             if let Some(what) = bad_pointer(pointer) {
                 fault(".at", what);
+            }
+        }
+        if value.above.is_some() && *quantity != Quantity::CloudBase {
+            fault(".above", "is for cloud_base alone".into());
+        }
+        if let Some(number) = value.absent {
+            if mapping.steps.is_none() {
+                fault(".absent", "needs a list of steps".into());
+            }
+            if !number.is_finite() {
+                fault(".absent", format!("{number} is no number"));
             }
         }
         match value.unit.conversion(*quantity) {
@@ -144,24 +164,18 @@ impl<'a> Steps<'a> {
         if written.is_empty() {
             return Err(ReadError::Empty("the document has no steps".into()));
         }
-        let mut last_s = None;
-        written
-            .into_iter()
-            .map(|value| {
-                let time_s = stamp.read(value, last_s, &mapping.time)?;
-                last_s = Some(time_s);
-                Ok(time_s)
-            })
-            .collect()
+        let stamps: Result<Vec<_>, _> = written.into_iter().map(|value| stamp.read(value, &mapping.time)).collect();
+        Ok(stamp::series(&stamps?))
     }
 
     /// What stands at a pointer in each step.
-    fn column(&self, at: &str, count: usize, time_at: &str) -> Result<Vec<Option<&'a Value>>, ReadError> {
+    fn column(&self, value: &ValueMapping, count: usize, time_at: &str) -> Result<Vec<Option<&'a Value>>, ReadError> {
+        let at = &value.at;
         let unexpected = |what| ReadError::Unexpected { at: at.to_owned(), what };
         match self {
             Self::List(steps) => {
                 let column: Vec<_> = steps.iter().map(|step| step.pointer(at)).collect();
-                if column.iter().all(Option::is_none) {
+                if value.absent.is_none() && column.iter().all(Option::is_none) {
                     return Err(unexpected(format!("is in none of the {count} steps")));
                 }
                 Ok(column)
@@ -189,7 +203,7 @@ impl<'a> Steps<'a> {
                     at: since.clone(),
                     what: format!("the step at {} has no begin of its period there", intake::moment(end)),
                 })?;
-                Ok(stamp.read(begin, None, since)?..end)
+                Ok(stamp.read(begin, since)?[0]..end)
             };
             return steps.iter().zip(times).map(begins).collect();
         }
@@ -223,7 +237,15 @@ fn rates(
 }
 
 fn take(intake: &mut Intake, found: Option<&Value>, mapping: &ValueMapping, over_h: f64) -> f32 {
-    let Some(value) = found.filter(|value| !value.is_null()) else { return intake.lack() };
+    let Some(value) = found else {
+        return match mapping.absent {
+            Some(number) => intake.keep(number, over_h),
+            None => intake.lack(),
+        };
+    };
+    if value.is_null() {
+        return intake.lack();
+    }
     match number(value) {
         Some(number) if mapping.missing.contains(&number) => intake.lack(),
         Some(number) => intake.keep(number, over_h),
@@ -259,7 +281,7 @@ fn field_for(root: &Value, mapping: &JsonMapping, stamp: &Stamp, asked: Place) -
         _ => None,
     };
     let issued = match &mapping.issued {
-        Some(at) => chrono::DateTime::from_timestamp(stamp.read(found(at)?, None, at)?, 0),
+        Some(at) => chrono::DateTime::from_timestamp(stamp.read(found(at)?, at)?[0], 0),
         None => None,
     };
     let mut field = Field::new(Space::Point(located.unwrap_or(asked)), issued)?;

@@ -43,34 +43,33 @@ impl<'a> Stamp<'a> {
         Self { format, zone: mapping.time_zone }
     }
 
-    /// Unix seconds of a time stamp. A local time that clocks show twice is its first occurrence unless that would not
-    /// come after `last_s`.
+    /// Unix seconds of a time stamp: the first and the second time at which clocks show it, mostly the same.
     ///
     /// # Errors
     /// [`ReadError::Unexpected`] for what is no time in that format, a local time that clocks skip, or a year outside
     /// those the service computes for.
-    pub fn read(&self, value: &Value, last_s: Option<i64>, at: &str) -> Result<i64, ReadError> {
+    pub fn read(&self, value: &Value, at: &str) -> Result<[i64; 2], ReadError> {
         let unexpected = |what: String| ReadError::Unexpected { at: at.to_owned(), what };
         let text =
             || value.as_str().ok_or_else(|| unexpected(format!("a time is {}, not text", short(&value.to_string()))));
-        let time_s = match &self.format {
+        let times_s = match &self.format {
             Format::Rfc3339 => {
                 let text = text()?;
-                DateTime::parse_from_rfc3339(text)
-                    .map_err(|error| unexpected(format!("{:?} is no RFC 3339 time: {error}", short(text))))?
-                    .timestamp()
+                let time = DateTime::parse_from_rfc3339(text)
+                    .map_err(|error| unexpected(format!("{:?} is no RFC 3339 time: {error}", short(text))))?;
+                [time.timestamp(); 2]
             }
             Format::Unix { per_s } => {
                 let number = super::number(value).filter(|number| number.is_finite());
                 let number =
                     number.ok_or_else(|| unexpected(format!("{} is no Unix time", short(&value.to_string()))))?;
-                (number / per_s).floor() as i64
+                [(number / per_s).floor() as i64; 2]
             }
             Format::Pattern(items) => {
                 let text = text()?;
                 match written(text, items) {
-                    Ok(Written::Instant(time_s)) => time_s,
-                    Ok(Written::Local(local)) => self.resolve(local, last_s).ok_or_else(|| {
+                    Ok(Written::Instant(time_s)) => [time_s; 2],
+                    Ok(Written::Local(local)) => self.shown(local).ok_or_else(|| {
                         unexpected(format!(
                             "{local} does not exist in {}: clocks skip it; a feed that ignores summer time needs a \
                              fixed zone such as Etc/GMT+5",
@@ -83,8 +82,8 @@ impl<'a> Stamp<'a> {
                 }
             }
         };
-        if (TIME_MIN.timestamp()..=TIME_MAX.timestamp()).contains(&time_s) {
-            Ok(time_s)
+        if times_s.iter().all(|time_s| (TIME_MIN.timestamp()..=TIME_MAX.timestamp()).contains(time_s)) {
+            Ok(times_s)
         } else {
             Err(unexpected(format!(
                 "{} is not between {} and {}: is the time format right?",
@@ -95,16 +94,41 @@ impl<'a> Stamp<'a> {
         }
     }
 
-    fn resolve(&self, local: NaiveDateTime, last_s: Option<i64>) -> Option<i64> {
+    fn shown(&self, local: NaiveDateTime) -> Option<[i64; 2]> {
         match self.zone.from_local_datetime(&local) {
             LocalResult::None => None,
-            LocalResult::Single(time) => Some(time.timestamp()),
-            LocalResult::Ambiguous(earlier, later) => {
-                let (earlier_s, later_s) = (earlier.timestamp(), later.timestamp());
-                Some(if last_s.is_some_and(|last_s| earlier_s <= last_s) { later_s } else { earlier_s })
-            }
+            LocalResult::Single(time) => Some([time.timestamp(); 2]),
+            LocalResult::Ambiguous(first, second) => Some([first.timestamp(), second.timestamp()]),
         }
     }
+}
+
+/// Which of the two times each stamp of a series means, so that they ascend or descend throughout where that is possible.
+pub fn series(stamps: &[[i64; 2]]) -> Vec<i64> {
+    let forward = rising(stamps.iter());
+    if ascend(&forward) {
+        return forward;
+    }
+    let mut backward = rising(stamps.iter().rev());
+    if ascend(&backward) {
+        backward.reverse();
+        return backward;
+    }
+    forward
+}
+
+/// The first of each two times unless it would not come after the one before.
+fn rising<'a>(stamps: impl Iterator<Item = &'a [i64; 2]>) -> Vec<i64> {
+    let mut last_s = i64::MIN;
+    let after_last = |&[first, second]: &[i64; 2]| {
+        last_s = if first > last_s { first } else { second };
+        last_s
+    };
+    stamps.map(after_last).collect()
+}
+
+fn ascend(times_s: &[i64]) -> bool {
+    times_s.windows(2).all(|pair| pair[0] < pair[1])
 }
 
 /// What a time stamp says by itself.

@@ -104,6 +104,16 @@ fn local_times_follow_the_clocks_through_both_changes() {
     let times = instants(&read_text(autumn, mapped).unwrap(), Quantity::Temperature);
     assert_eq!(times.windows(2).map(|pair| pair[1] - pair[0]).collect::<Vec<_>>(), [3600, 3600, 3600]);
     assert_eq!(intake::moment(times[1]), "2026-11-01T05:30:00Z");
+    let backward =
+        r#"{"t": ["2026-11-01T02:30", "2026-11-01T01:30", "2026-11-01T01:30", "2026-11-01T00:30"], "v": [4, 3, 2, 1]}"#;
+    let field = read_text(backward, mapped).unwrap();
+    assert_eq!(instants(&field, Quantity::Temperature), times);
+    assert_eq!(field.series(Quantity::Temperature).unwrap().values, [1.0, 2.0, 3.0, 4.0]);
+    // Twice the same hour and no more: what a clock shows twice is told apart, what it shows three times is not.
+    let within =
+        r#"{"t": ["2026-11-01T01:30", "2026-11-01T01:00", "2026-11-01T01:30", "2026-11-01T01:00"], "v": [4, 3, 2, 1]}"#;
+    assert_eq!(instants(&read_text(within, mapped).unwrap(), Quantity::Temperature).len(), 4);
+    assert!(refusal(&backward.replace("T02:30", "T01:30"), mapped).contains("occurs twice"));
     let spring = refusal(r#"{"t": ["2026-03-08T02:30"], "v": [1]}"#, mapped);
     assert!(spring.starts_with("/t: 2026-03-08 02:30:00 does not exist in America/Toronto"), "{spring}");
 }
@@ -184,4 +194,48 @@ fn what_is_no_json_at_all_is_said_so() {
     }
     let latin1 = read(b"{\"t\": \"\xe9\"}", &mapping(&mapped), asked()).unwrap_err();
     assert_eq!(latin1.to_string(), "not a readable document: not UTF-8 from byte 7");
+}
+
+#[test]
+fn a_key_left_out_is_missing_unless_the_mapping_says_what_it_stands_for() {
+    let with = |value: &str| {
+        format!(r#"{{"steps": "/s", "time": "/t", "time_format": "unix_s", "values": {{"rain": {value}}}}}"#)
+    };
+    let silent = with(r#"{"at": "/rain/1h", "unit": "mm", "over_min": 30, "period": "before"}"#);
+    let dry = silent.replace("}}}", r#", "absent": 0}}}"#);
+    let steps = |rains: [&str; 3]| {
+        let [a, b, c] = rains;
+        format!(r#"{{"s": [{{"t": 1800 {a}}}, {{"t": 3600 {b}}}, {{"t": 5400 {c}}}]}}"#)
+    };
+    let rain = |document: &str, mapped: &str| {
+        read_text(document, mapped).map(|field| (field.series(Quantity::Rain).cloned(), field.notes))
+    };
+    let none = steps(["", "", ""]);
+    assert_eq!(rain(&none, &silent).unwrap_err().to_string(), "/rain/1h: is in none of the 3 steps");
+    let (series, notes) = rain(&none, &dry).unwrap();
+    assert_eq!(series.unwrap().values, [0.0, 0.0, 0.0]);
+    assert_eq!(notes, ["rain: /rain/1h is absent in 3 of 3 steps: 0 mm there"]);
+    let some = steps(["", r#", "rain": {"1h": 1.5}"#, r#", "rain": {"1h": null}"#]);
+    assert_eq!(rain(&some, &silent).unwrap().0.unwrap().values, [3.0]);
+    let (series, _) = rain(&some, &dry).unwrap();
+    assert_eq!(series.unwrap(), Series { times: Times::Periods(vec![0..1800, 1800..3600]), values: vec![0.0, 3.0] });
+    assert_eq!(
+        refusal("{}", &dry.replace(r#""steps": "/s", "#, "")),
+        "mapping values.rain.absent: needs a list of steps"
+    );
+}
+
+#[test]
+fn a_cloud_base_is_above_the_ground_unless_the_mapping_says_above_the_sea() {
+    let document = r#"{"t": ["2031-05-04T12:00:00Z"], "v": [300]}"#;
+    let with =
+        |quantity: &str, above: &str| format!(r#"{{{HEAD} {{"{quantity}": {{"at": "/v", "unit": "m" {above}}}}}}}"#);
+    for (above, expected) in [("", false), (r#", "above": "ground""#, false), (r#", "above": "sea""#, true)] {
+        let field = read_text(document, &with("cloud_base", above)).unwrap();
+        assert_eq!(field.cloud_base_above_sea, expected, "{above}");
+    }
+    assert_eq!(
+        refusal(document, &with("visibility", r#", "above": "sea""#)),
+        "mapping values.visibility.above: is for cloud_base alone"
+    );
 }
