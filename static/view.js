@@ -119,7 +119,10 @@ export class SkyView {
     const contrast = step.prominence === null ? light?.bows[0].contrast : Math.max(step.prominence, TRACE);
     const strength = sun_up && light ? contrast / light.bows[0].contrast : 0;
     this.light.draw(camera, axis, light, strength, Math.min(1, elevation_deg + 0.5).toFixed(2));
-    for (const { edges } of this.bows) if (light && sun_up) set(edges[0], { opacity: 0.4 });
+    if (light) {
+      for (const node of [this.dark, this.inside, ...this.bows.map((b) => b.group)]) set(node, { opacity: 0 });
+      if (sun_up) for (const { edges } of this.bows) set(edges[0], { opacity: 0.4 });
+    }
     this.node.dataset.light = light ? "computed" : "by-eye";
   }
 

@@ -233,6 +233,8 @@ test("windows lead to their best moment, and the line says what to do", async ()
   const made = (o) => {
     const i = o.steps.findIndex((s, j) => j > 3 && s.crown?.elevation_deg > 10 && s.sun.elevation_deg > 2);
     const at = Date.parse(o.steps[i].time);
+    // At the real service this place may have no weather; a Sun that is up now must not change the line.
+    for (const step of o.steps) step.chance ??= 0;
     Object.assign(o.steps[i], { chance: 0.64, limited_by: "sun_blocked" });
     o.windows = [{ start: end(at - 600e3), end: end(at + 600e3), best: { time: o.steps[i].time, chance: 0.64 }, face_azimuth_deg: o.steps[i].antisolar_point.azimuth_deg, face_magnetic_deg: (o.steps[i].antisolar_point.azimuth_deg + 4) % 360, crown_elevation_deg: o.steps[i].crown.elevation_deg, visible_arc_fraction: o.steps[i].visible_arc_fraction }];
   };
