@@ -10,7 +10,7 @@ use rainward::service::query::Query;
 use rainward::sky::observer::Observer;
 use rainward::weather::feeds::{CheckQuantity, CheckReport, CheckSpace};
 
-use super::{print_problem, say};
+use super::{print_problem, say, say_json};
 
 /// Exit code when the document could not be fetched or read.
 const NOT_READ: u8 = 3;
@@ -59,10 +59,7 @@ pub async fn run(app: &App, arguments: Arguments) -> ExitCode {
         }
     };
     if json {
-        match serde_json::to_string_pretty(&report) {
-            Ok(text) => say!("{text}"),
-            Err(error) => eprintln!("rainward: {error}"),
-        }
+        say_json(&report);
     } else {
         print(&report, observer);
     }

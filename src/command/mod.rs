@@ -29,6 +29,14 @@ pub fn emit(line: std::fmt::Arguments<'_>) {
     }
 }
 
+/// Prints a value as one line of JSON.
+pub fn say_json(value: &impl serde::Serialize) {
+    match serde_json::to_string(value) {
+        Ok(text) => emit(format_args!("{text}")),
+        Err(error) => eprintln!("rainward: cannot print: {error}"),
+    }
+}
+
 /// `println!` that survives a closed pipe.
 macro_rules! say {
     ($($words:tt)*) => { $crate::command::emit(format_args!($($words)*)) };

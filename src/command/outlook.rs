@@ -8,7 +8,7 @@ use rainward::service::App;
 use rainward::service::outlook::{OutlookAnswer, Question, answer};
 use rainward::service::query::Query;
 
-use super::{print_problem, say};
+use super::{print_problem, say, say_json};
 
 /// Exit code when no window was found.
 const NO_WINDOW: u8 = 1;
@@ -94,10 +94,7 @@ pub async fn run(app: &App, arguments: Arguments) -> ExitCode {
         }
     };
     if json {
-        match serde_json::to_string(&answer) {
-            Ok(text) => say!("{text}"),
-            Err(error) => eprintln!("rainward: {error}"),
-        }
+        say_json(&answer);
     } else {
         let label =
             site.and_then(|name| app.config().sites.iter().find(|site| site.name == name).map(|s| s.label.clone()));
