@@ -152,7 +152,7 @@ impl Bow {
             feet,
             visible_arc_fraction: arc.fraction,
             above_horizon: !hidden,
-            below_horizon_by_deg: hidden.then(|| -circle.reach_deg(&observer.horizon)),
+            below_horizon_by_deg: hidden.then(|| -circle.clearance_of_best_deg(&observer.horizon)),
             limited_by: sight::limit(observer, sun, &circle, &arc),
         }
     }

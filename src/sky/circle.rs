@@ -82,9 +82,23 @@ impl Circle {
         if top_deg - lowest_deg < -BULGE_DEG {
             return top_deg - lowest_deg;
         }
+        self.best_clearance_deg(horizon, self.half_width((lowest_deg - 2.0 * BULGE_DEG).max(-90.0)))
+    }
+
+    /// By how many degrees the best point of the whole circle stands over the horizon; negative where all of it is hidden.
+    /// Dearer than [`Circle::reach_deg`], which has the same sign.
+    pub fn clearance_of_best_deg(&self, horizon: &Horizon) -> f64 {
+        match horizon {
+            Horizon::Level(limit_deg) => self.point(0.0).elevation_deg() - limit_deg,
+            Horizon::Skyline(_) => self.best_clearance_deg(horizon, PI),
+        }
+    }
+
+    /// The clearance of the best point within an angle from the top.
+    fn best_clearance_deg(&self, horizon: &Horizon, within: f64) -> f64 {
         let width = TAU / SAMPLES as f64;
         let best = self
-            .sample_angles(horizon, 0.0, self.half_width((lowest_deg - 2.0 * BULGE_DEG).max(-90.0)))
+            .sample_angles(horizon, 0.0, within)
             .into_iter()
             .map(|angle| (angle, self.clearance_deg(horizon, angle)))
             .max_by(|a, b| a.1.total_cmp(&b.1))
@@ -227,7 +241,7 @@ impl Circle {
     }
 
     fn arc(&self, runs: Vec<(f64, f64)>) -> Arc {
-        let fraction = runs.iter().map(|(from, to)| to - from).sum::<f64>() / TAU;
+        let fraction = runs.iter().fold(0.0, |sum, (from, to)| sum + (to - from)) / TAU;
         let crown = runs
             .iter()
             .flat_map(|&(from, to)| [highest_angle(from, to), from, to])

@@ -19,8 +19,8 @@ BINARY = Path(os.environ.get("PEERS_BINARY", TARGET / "release" / "rainward"))
 SEED = int(os.environ.get("PEERS_SEED") or random.SystemRandom().randrange(2**31))
 
 
-def pytest_report_header(config):
-    return f"PEERS_SEED={SEED}"
+def pytest_terminal_summary(terminalreporter):
+    terminalreporter.write_line(f"PEERS_SEED={SEED}")
 
 
 class Service:
