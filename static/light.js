@@ -6,7 +6,7 @@ import { fetchLight } from "./api.js";
 export const RAIN_MM_H = 5;
 /**
  * Heights of the Sun that are asked for, degrees. What lies between is mixed by log(h + 3): colours on the screen then are within
- * 0.03 of their range, luminance and contrast (by their logarithms) within 15 %, above 0.5° within 6 %.
+ * 0.03 of their range, luminance (by its logarithm) and contrast within 14 %.
  */
 export const SUNS_DEG = [0, 1, 3, 7, 16, 45];
 /** What makes the sunlight at 45° white, in linear sRGB, its luminance kept: the setting "daylight" of a camera. */

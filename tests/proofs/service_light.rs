@@ -198,10 +198,10 @@ fn refused(reply: &Reply) -> Vec<String> {
 async fn bounds_are_named_and_all_bad_fields_come_at_once() {
     let served = Served::demo().await;
     let bad = "sun_elevation_deg=91&rain_mm_h=0&drop_radius_um=-1&fog=mist&water=oil&water_temperature_c=41\
-               &aerosol_optical_depth=-0.1&lit_optical_depth=0&wavelength_um=NaN&lit_depth=1";
+               &aerosol_optical_depth=-0.1&lit_optical_depth=0&wavelength_um=NaN&lit_optical_dept=1";
     let reply = served.get(&format!("/v1/light?{bad}")).await;
     let mut all = light::PARAMETERS.map(ToOwned::to_owned).to_vec();
-    all.push("lit_depth".to_owned());
+    all.push("lit_optical_dept".to_owned());
     all.sort();
     assert_eq!((reply.status, refused(&reply)), (400, all));
     for text in [
