@@ -1,6 +1,6 @@
 """Starts the release build on a free port and asks it questions; what it answers is held against reference libraries.
 
-Random input comes from one seed, printed at the head of the run; PEERS_SEED repeats a run.
+Random input comes from one seed, printed at the end of the run; PEERS_SEED repeats a run.
 """
 
 import os
